@@ -1,4 +1,4 @@
-"""What the Bayesian analysis gives under one prior set: draws, their summaries, and whether to believe them."""
+"""What the Bayesian analysis gives under one prior set: draws, summaries, and whether to believe them."""
 
 from __future__ import annotations
 
