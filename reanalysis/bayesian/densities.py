@@ -8,11 +8,11 @@ do not depend on which parameterisation the sampler used.
 from __future__ import annotations
 
 from functools import singledispatch
+from typing import Protocol
 
 import numpy as np
 from numpy.typing import NDArray
 from scipy import stats
-from scipy.stats.distributions import rv_frozen
 
 from reanalysis.study.distributions import (
     Cauchy,
@@ -35,7 +35,19 @@ from reanalysis.study.distributions import (
 )
 
 FloatArray = NDArray[np.float64]
-Frozen = rv_frozen
+
+
+class Frozen(Protocol):
+    """The part of a frozen scipy distribution that is used here and in pictures."""
+
+    def pdf(self, x: FloatArray) -> FloatArray:
+        """Density."""
+
+    def logpdf(self, x: FloatArray) -> FloatArray:
+        """Logarithm of the density."""
+
+    def ppf(self, q: float) -> float:
+        """Quantile."""
 
 
 @singledispatch

@@ -56,7 +56,9 @@ class TippingPrior:
 
 @dataclass(frozen=True, slots=True)
 class NoTipping:
-    """The answer is the same over the whole sweep: ``always`` or ``never`` reached; or it changes more than once."""
+    """No single tipping prior: over the sweep the claim is ``always`` or ``never`` supported, or it
+    changes ``several`` times.
+    """
 
     claim: Literal["direction", "beyond"]
     reached: Literal["always", "never", "several"]

@@ -1,0 +1,46 @@
+"""Tie the study's questions to columns of the design."""
+
+from __future__ import annotations
+
+import difflib
+
+from reanalysis.design.model import Design
+from reanalysis.effects.result import Question
+from reanalysis.errors import DesignError, Problem
+from reanalysis.study.spec import QuestionSpec
+
+
+def resolve_questions(specs: tuple[QuestionSpec, ...], design: Design) -> tuple[Question, ...]:
+    """Return the questions with their columns and units.
+
+    Raises
+    ------
+    DesignError
+        When a question is about something that is not a coefficient; names those that there are.
+    """
+    names = [column.name for column in design.columns]
+    problems = [_unknown(spec, names) for spec in specs if spec.effect not in names]
+    if problems:
+        raise DesignError(problems)
+    return tuple(
+        Question(
+            name=spec.name,
+            effect=spec.effect,
+            unit=design.columns[names.index(spec.effect)].unit,
+            column=names.index(spec.effect),
+            direction=spec.direction,
+            matters_beyond=spec.matters_beyond,
+            act_when=spec.act_when,
+        )
+        for spec in specs
+    )
+
+
+def _unknown(spec: QuestionSpec, names: list[str]) -> Problem:
+    close = difflib.get_close_matches(spec.effect, names, n=1)
+    return Problem(
+        where=f'[[question]] "{spec.name}", effect',
+        found=f'the model has no coefficient "{spec.effect}"',
+        allowed=", ".join(names),
+        advice=f'write "{close[0]}"' if close else "use one of these names",
+    )
