@@ -137,9 +137,7 @@ PositiveDistribution = (
 )
 """Distributions on the positive half line."""
 
-Distribution = Annotated[
-    RealDistribution | PositiveDistribution | Uniform, Field(discriminator="dist")
-]
+Distribution = Annotated[RealDistribution | PositiveDistribution | Uniform, Field(discriminator="dist")]
 """Any distribution of a coefficient."""
 
 AuxiliaryDistribution = Annotated[PositiveDistribution, Field(discriminator="dist")]

@@ -19,6 +19,14 @@ Direction = Literal["greater", "less", "either"]
 Probability = Annotated[float, Field(gt=0.5, lt=1.0)]
 Text = Annotated[str, Field(min_length=1, max_length=4000)]
 
+LINKS: dict[FamilyName, tuple[LinkName, ...]] = {
+    "gaussian": ("identity",),
+    "bernoulli": ("logit", "probit", "cloglog"),
+    "poisson": ("log",),
+}
+"""Links offered for each family, the default one first. Kept here as well as in
+`reanalysis.families` because reading a study file must not import scipy."""
+
 BUILT_IN_PRIOR_SETS = ("flat", "weak", "sceptical")
 """Names of the prior sets that every study has, in the order of the report."""
 
