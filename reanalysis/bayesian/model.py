@@ -165,13 +165,14 @@ def check_model(model: bmb.Model, structure: Structure, inputs: Inputs, priors: 
     expected = {"matrix": (design[:, : structure.columns], inputs.matrix)}
     expected["outcome"] = (np.asarray(graph.rvs_to_values[graph[_RESPONSE]].data), inputs.response)
     rows = inputs.priors.reshape((-1, WIDTH))
-    names = [COEFFICIENTS] + ([structure.family.auxiliary] if structure.family.auxiliary else [])
-    asked = [rows[: structure.columns], rows[structure.columns]]
-    for name, row in zip(names, asked, strict=False):
+    asked = {COEFFICIENTS: rows[: structure.columns]}
+    if structure.family.auxiliary is not None:
+        asked[structure.family.auxiliary] = rows[structure.columns]
+    for name, row in asked.items():
         expected[f"prior of {name}"] = (_hyperparameters(graph[name]), row)
     wrong = [what for what, (got, want) in expected.items() if not np.array_equal(got, want)]
     free = {variable.name for variable in graph.free_RVs}
-    if free != set(names):
+    if free != set(asked):
         wrong.append(f"parameters {sorted(free)}")
     if wrong or not np.array_equal(priors.get_value(), inputs.priors.ravel()):
         raise FitError(

@@ -1,0 +1,68 @@
+"""Whether anything should stop the reader from relying on the results, said before anything else."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from reanalysis.bayesian.result import NoPosterior, PosteriorResult
+from reanalysis.comparison.result import Caveat, Status
+from reanalysis.design.outlook import Finding
+from reanalysis.frequentist.result import FrequentistFit, NotEstimable
+
+
+def judge(
+    frequentist: FrequentistFit,
+    posteriors: Sequence[PosteriorResult],
+    main_prior: str,
+    findings: Sequence[Finding],
+) -> Status:
+    """Collect what the reader must know before relying on the numbers.
+
+    Parameters
+    ----------
+    frequentist : FrequentistFit
+    posteriors : sequence of PosteriorFit or NoPosterior
+        One for each prior set.
+    main_prior : str
+        A failure under the main prior set fails the report; under another one it is a doubt.
+    findings : sequence of Finding
+        What could be seen in the design; those that stop or warn are repeated here.
+    """
+    caveats = [
+        *_of_posteriors(posteriors, main_prior),
+        *_of_frequentist(frequentist),
+        *(Caveat("doubtful", finding.message) for finding in findings if finding.severity == "stop"),
+    ]
+    caveats.sort(key=lambda caveat: caveat.severity != "failed")
+    if not caveats:
+        return Status("sound", ())
+    return Status(caveats[0].severity, tuple(dict.fromkeys(caveats)))
+
+
+def _of_posteriors(posteriors: Sequence[PosteriorResult], main_prior: str) -> list[Caveat]:
+    caveats = []
+    for posterior in posteriors:
+        name = posterior.prior_set.name
+        if isinstance(posterior, NoPosterior):
+            failed = "failed" if name == main_prior else "doubtful"
+            words = f"There is no posterior under the {name} prior set: {posterior.reason}."
+            caveats.append(Caveat("failed" if failed == "failed" else "doubtful", words))
+        elif posterior.check.verdict == "doubtful":
+            found = "; ".join(posterior.check.findings)
+            caveats.append(
+                Caveat("doubtful", f"The computation under the {name} prior set is doubtful ({found}).")
+            )
+    return caveats
+
+
+def _of_frequentist(frequentist: FrequentistFit) -> list[Caveat]:
+    caveats = []
+    missing = [result for result in frequentist.coefficients if isinstance(result, NotEstimable)]
+    if missing:
+        names = ", ".join(result.name for result in missing)
+        caveats.append(
+            Caveat("doubtful", f"No maximum-likelihood estimate exists for {names}: {missing[0].reason}.")
+        )
+    if not frequentist.converged:
+        caveats.append(Caveat("failed", "The frequentist fit did not converge."))
+    return caveats
