@@ -14,7 +14,7 @@ ROOT = Path(__file__).resolve().parents[1]
 PACKAGE = "reanalysis"
 
 LAYERS = (
-    {"errors"},
+    {"errors", "progress"},
     {"study"},
     {"data"},
     {"families"},
