@@ -12,13 +12,15 @@ from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy import special, stats
+from scipy import special
 
 from reanalysis.study.spec import FamilyName, LinkName
 
 FloatArray = NDArray[np.float64]
 
 LOG_TWO_PI = float(np.log(2.0 * np.pi))
+
+_LARGEST_EXPONENT = 700.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -70,13 +72,19 @@ def _cloglog_inverse(eta: FloatArray) -> FloatArray:
     return np.asarray(-np.expm1(-np.exp(np.minimum(eta, 30.0))))
 
 
+def _log_inverse(eta: FloatArray) -> FloatArray:
+    # exp overflows just above 709; a sampler's first steps do get there.
+    return np.asarray(np.exp(np.minimum(eta, _LARGEST_EXPONENT)))
+
+
 def _gaussian_log_likelihood(y: FloatArray, eta: FloatArray, sigma: FloatArray) -> FloatArray:
     z = (y - eta) / sigma
     return np.asarray(-0.5 * (z * z + LOG_TWO_PI) - np.log(sigma))
 
 
 def _logit_log_likelihood(y: FloatArray, eta: FloatArray, _: FloatArray) -> FloatArray:
-    return np.asarray(y * eta - np.logaddexp(0.0, eta))
+    # y * eta - log(1 + exp(eta)) would cancel to 0 for a likely event far out.
+    return np.asarray(-np.logaddexp(0.0, np.where(y > 0.5, -eta, eta)))
 
 
 def _probit_log_likelihood(y: FloatArray, eta: FloatArray, _: FloatArray) -> FloatArray:
@@ -85,14 +93,14 @@ def _probit_log_likelihood(y: FloatArray, eta: FloatArray, _: FloatArray) -> Flo
 
 
 def _cloglog_log_likelihood(y: FloatArray, eta: FloatArray, _: FloatArray) -> FloatArray:
-    hazard = np.exp(np.minimum(eta, 700.0))
+    hazard = _log_inverse(eta)
     # log(1 - exp(-h)) for tiny h is log h = eta; log(-expm1) loses nothing else.
     event = np.where(eta < -37.0, eta, np.log(-np.expm1(-np.maximum(hazard, 1e-300))))
     return np.asarray(np.where(y > 0.5, event, -hazard))
 
 
 def _poisson_log_likelihood(y: FloatArray, eta: FloatArray, _: FloatArray) -> FloatArray:
-    return np.asarray(y * eta - np.exp(np.minimum(eta, 700.0)) - special.gammaln(y + 1.0))
+    return np.asarray(y * eta - _log_inverse(eta) - special.gammaln(y + 1.0))
 
 
 FAMILIES: tuple[Family, ...] = (
@@ -158,7 +166,7 @@ FAMILIES: tuple[Family, ...] = (
         auxiliary=None,
         scale_words="log rate",
         latent_sd=1.0,
-        inverse_link=np.exp,
+        inverse_link=_log_inverse,
         log_likelihood=_poisson_log_likelihood,
     ),
 )

@@ -83,8 +83,11 @@ class Response:
 
 @dataclass(frozen=True, slots=True)
 class RowAccount:
-    """Rows read, used, and dropped. `dropped_by` counts for each variable the rows in which it is
-    missing (a row with two missing variables counts for both)."""
+    """Rows read, used, and dropped.
+
+    `dropped_by` counts for each variable the rows in which it is missing (a row with two missing
+    variables counts for both).
+    """
 
     read: int
     used: int
