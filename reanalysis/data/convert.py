@@ -17,7 +17,10 @@ MANY_LEVELS = 30
 _SHOWN = 3
 _SENTINELS = (-9.0, -99.0, -999.0, -9999.0, 99.0, 999.0, 9999.0)
 
-_NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
+_NUMBER_PATTERN = r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?"
+_NUMBER = re.compile(_NUMBER_PATTERN)
+_NUMBER_LINES = re.compile(rf"(?:[ \t]*+(?:{_NUMBER_PATTERN})?[ \t]*+\n)*+")
+_CODE_LINE = re.compile(r"^[ \t]*0[0-9]+[ \t]*$", re.MULTILINE)
 _NOT_FINITE = re.compile(r"[+-]?(?:inf|infinity|nan)", re.IGNORECASE)
 _CODE = re.compile(r"0[0-9]+")
 _DECIMAL_COMMA = re.compile(r"[+-]?[0-9]+,[0-9]+")
@@ -97,10 +100,26 @@ def convert_column(name: str, table: RawTable, rules: Rules) -> Converted:
         if levels is None:
             return _numbers(name, table, *_blank_out(name, cells, rules))
         cells = [None if np.isnan(value) else shortest(float(value)) for value in cells]
+    if levels is None and (plain := _plain_numbers(cells, rules)) is not None:
+        return _numbers(name, table, plain, ())
     labels, notes = _labels(name, cells, rules)
     if levels is not None:
         return _declared_factor(name, table, labels, levels, notes)
     return _undeclared(name, table, labels, notes)
+
+
+def _plain_numbers(cells: Sequence[str | None], rules: Rules) -> NDArray[np.float64] | None:
+    """Read the common case, nothing but numbers and blanks, in one go; None where it is not that.
+
+    Gives what the way over the labels gives, many times faster in a long column.
+    """
+    if "" not in rules.missing_values or any(map(_NUMBER.fullmatch, rules.missing_values)):
+        return None
+    text = "\n".join(cell or "" for cell in cells) + "\n"
+    # A cell may hold line ends of its own.
+    if text.count("\n") != len(cells) or not _NUMBER_LINES.fullmatch(text) or _CODE_LINE.search(text):
+        return None
+    return np.array([float(line) if line.strip() else np.nan for line in text.split("\n")[:-1]])
 
 
 def _blank_out(
@@ -134,17 +153,14 @@ def _labels(name: str, cells: Sequence[str | None], rules: Rules) -> tuple[_Labe
     first = np.zeros(len(raw), dtype=np.intp)
     first[codes[known][::-1]] = known[::-1]  # written last to first, so that the first row stays
     notes = []
+    numbers = {float(text) for text in rules.missing_values if _NUMBER.fullmatch(text)}
     for i, text in enumerate(stripped):
-        if text in rules.missing_values or _same_number(text, rules.missing_values):
+        if text in rules.missing_values or (numbers and _NUMBER.fullmatch(text) and float(text) in numbers):
             if text:
                 notes.append(_missing_note(name, text, int(counts[i])))
             counts[i] = 0
     codes = np.where((codes >= 0) & (counts[codes] > 0), codes, -1) if raw else codes
     return _Labels(codes, raw, stripped, counts, first), tuple(notes)
-
-
-def _same_number(text: str, missing_values: frozenset[str]) -> bool:
-    return bool(_NUMBER.fullmatch(text)) and shortest(float(text)) in missing_values
 
 
 def _undeclared(name: str, table: RawTable, labels: _Labels, notes: tuple[str, ...]) -> Converted:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import bisect
 import datetime
 import warnings
 import zipfile
@@ -9,9 +10,10 @@ import zlib
 from array import array
 from collections.abc import Iterator, Sequence
 from pathlib import Path
-from typing import Any
+from typing import Any, BinaryIO
 from xml.etree.ElementTree import ParseError  # openpyxl raises it; nothing is parsed here
 
+import numpy as np
 import openpyxl  # type: ignore[import-untyped]
 
 from reanalysis.data.convert import shortest
@@ -59,14 +61,15 @@ def read_excel(path: Path, request: Request) -> RawTable:
     """
     try:
         check_zip(path, request.limits)
-        with warnings.catch_warnings():
+        # Our own file object, so that it is closed whatever happens in the library.
+        with path.open("rb") as stream, warnings.catch_warnings():
             # Styles and extensions that openpyxl does not know hold no data.
             warnings.simplefilter("ignore", UserWarning)
-            book = openpyxl.load_workbook(path, read_only=True, data_only=True, keep_links=False)
-            try:
-                return _read_sheet(path.name, _sheet(path.name, book, request.sheet), request)
-            finally:
-                book.close()
+            sheet = _sheet(path.name, stream, request.sheet, data_only=True)
+            table = _read_sheet(path.name, sheet, request)
+            if any(_has_gaps(column) for column in table.columns.values()):
+                _check_formulas(path.name, _sheet(path.name, stream, request.sheet, data_only=False), table)
+            return table
     except TooLargeError as error:
         raise failure(
             path.name, str(error), error.allowed, "keep only the rows and columns needed"
@@ -80,7 +83,8 @@ def read_excel(path: Path, request: Request) -> RawTable:
         ) from error
 
 
-def _sheet(file: str, book: Any, wanted: str | None) -> Any:
+def _sheet(file: str, stream: BinaryIO, wanted: str | None, *, data_only: bool) -> Any:
+    book = openpyxl.load_workbook(stream, read_only=True, data_only=data_only, keep_links=False)
     names = [sheet.title for sheet in book.worksheets]
     listed = ", ".join(f'"{name}"' for name in names)
     if wanted is None and len(names) != 1:
@@ -120,6 +124,41 @@ def _read_sheet(file: str, sheet: Any, request: Request) -> RawTable:
     _check_rows(file, places, beyond)
     columns = {name: _column(file, name, values, places, request) for name, values in cells.items()}
     return RawTable(file, columns, places, "row", notes)
+
+
+def _has_gaps(column: RawColumn) -> bool:
+    if isinstance(column, np.ndarray):
+        return bool(np.isnan(column).any())
+    return None in column
+
+
+def _check_formulas(file: str, sheet: Any, table: RawTable) -> None:
+    """Refuse cells whose formula has no saved result: they would pass for empty ones."""
+    sheet.reset_dimensions()
+    rows = _rows(sheet)
+    _, first = next(rows)
+    header = [_text(value).strip() for value in first]
+    problems = {}
+    for number, row in rows:
+        for name, value in zip(header, row, strict=False):
+            formula = isinstance(value, str) and value.startswith("=")
+            if formula and name in table.columns and name not in problems and _is_gap(table, name, number):
+                problems[name] = Problem(
+                    f"{file}, row {number}, column {name}",
+                    "the cell holds a formula whose result is not saved in the file",
+                    "values, or formulas with their results",
+                    "open the file in a spreadsheet program and save it, or save it as CSV",
+                )
+    if problems:
+        raise DataError(problems.values())
+
+
+def _is_gap(table: RawTable, name: str, number: int) -> bool:
+    place = bisect.bisect_left(table.places, number)
+    if place == len(table.places) or table.places[place] != number:
+        return True  # a row of nothing but such formulas was no row at all
+    value = table.columns[name][place]
+    return value is None or (not isinstance(value, str) and bool(np.isnan(value)))
 
 
 def _rows(sheet: Any) -> Iterator[tuple[int, Sequence[object]]]:

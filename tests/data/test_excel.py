@@ -76,6 +76,33 @@ def test_numbers_typed_as_text_are_numbers(study_of: StudyOf) -> None:
     ]
 
 
+def test_formulas_without_results_are_refused(study_of: StudyOf) -> None:
+    """A formula that no program has computed yet is not mistaken for an empty cell."""
+    rows: Rows = [["x", "z"], [1, 5], ["=A2+1", 6], [None, "=A2"]]
+    study = study_of(workbook(A=rows), "d.xlsx")
+
+    refused(study, "d.xlsx, row 3, column x: the cell holds a formula")
+    with pytest.raises(DataError, match="row 4, column z") as caught:
+        load_dataset(study, columns=frozenset("xz"))
+    assert len(caught.value.problems) == 2
+
+
+def test_row_numbers_can_lie(study_of: StudyOf) -> None:
+    """A sheet with a row number beyond the last possible one is given up early."""
+
+    def save(path: Path) -> None:
+        workbook(A=[["x"], [1], [2]])(path)
+        with zipfile.ZipFile(path) as archive:
+            parts = {name: archive.read(name) for name in archive.namelist()}
+        name = "xl/worksheets/sheet1.xml"
+        parts[name] = parts[name].replace(b'r="3"', b'r="99999999999"').replace(b"A3", b"A99999999999")
+        with zipfile.ZipFile(path, "w") as archive:
+            for part, content in parts.items():
+                archive.writestr(part, content)
+
+    refused(study_of(save, "d.xlsx"), "row numbers beyond the end of a sheet")
+
+
 def test_the_sheet_must_be_clear(study_of: StudyOf) -> None:
     """One sheet needs no name; of several the study names one, and it must exist."""
     save = workbook(First=[["x"], [1]], Second=[["x"], [2]])

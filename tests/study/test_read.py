@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
+import contextlib
 import hashlib
 import subprocess
 import sys
+import tempfile
 from pathlib import Path
 
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 
 from reanalysis.errors import StudyError
 from reanalysis.study.read import MAX_STUDY_BYTES, json_schema, load_study
@@ -309,3 +313,43 @@ def test_reading_a_study_loads_nothing_heavy() -> None:
     )
 
     assert done.stdout.strip() == "[]"
+
+
+PIECES = [
+    "[",
+    "]",
+    "{",
+    "}",
+    '"',
+    "'",
+    "=",
+    ".",
+    ",",
+    "\n",
+    "#",
+    "\\",
+    "0",
+    "a",
+    "\x00",
+    "ä",
+    "[[prior]]\n",
+    '"""',
+    "dist",
+]
+
+
+@given(
+    st.lists(
+        st.tuples(st.integers(0, 400), st.integers(0, 6), st.sampled_from(PIECES)), min_size=1, max_size=5
+    )
+)
+def test_damaged_files_give_a_study_or_a_study_error(edits: list[tuple[int, int, str]]) -> None:
+    """Whatever is cut from or put into a study file, no other exception comes out."""
+    text = GOOD + PRIOR + 'terms."a[b]" = { dist = "normal", sd = 1.0 }\n'
+    for start, length, piece in edits:
+        text = text[:start] + piece + text[start + length :]
+    with tempfile.TemporaryDirectory() as folder:
+        (Path(folder) / "firmness.csv").touch()
+        path = write(Path(folder), text)
+        with contextlib.suppress(StudyError):
+            assert load_study(path).spec.model.family == "gaussian"
