@@ -23,15 +23,16 @@ class Face:
     weight: Literal[400, 600]
     style: Literal["normal", "italic"]
     file: str
+    """Name of the WOFF2 file, without its ending; the sans ones exist as TrueType as well."""
 
 
 FACES = (
-    Face(SERIF, 400, "normal", "serif-regular.ttf"),
-    Face(SERIF, 400, "italic", "serif-italic.ttf"),
-    Face(SERIF, 600, "normal", "serif-semibold.ttf"),
-    Face(SANS, 400, "normal", "sans-regular.ttf"),
-    Face(SANS, 400, "italic", "sans-italic.ttf"),
-    Face(SANS, 600, "normal", "sans-semibold.ttf"),
+    Face(SERIF, 400, "normal", "serif-regular"),
+    Face(SERIF, 400, "italic", "serif-italic"),
+    Face(SERIF, 600, "normal", "serif-semibold"),
+    Face(SANS, 400, "normal", "sans-regular"),
+    Face(SANS, 400, "italic", "sans-italic"),
+    Face(SANS, 600, "normal", "sans-semibold"),
 )
 
 
@@ -61,7 +62,8 @@ def templates_folder() -> Path:
 def register_fonts() -> None:
     """Make the report's fonts known to matplotlib, for this process only."""
     for face in FACES:
-        font_manager.fontManager.addfont(templates_folder() / "fonts" / face.file)
+        if face.family == SANS:
+            font_manager.fontManager.addfont(templates_folder() / "fonts" / f"{face.file}.ttf")
 
 
 @cache
@@ -69,10 +71,11 @@ def font_face_css() -> str:
     """Return the CSS that carries all fonts inside itself, as data URIs."""
     rules = []
     for face in FACES:
-        content = base64.b64encode((templates_folder() / "fonts" / face.file).read_bytes()).decode("ascii")
+        file = templates_folder() / "fonts" / f"{face.file}.woff2"
+        content = base64.b64encode(file.read_bytes()).decode("ascii")
         rules.append(
             f'@font-face{{font-family:"{face.family}";font-weight:{face.weight};'
-            f"font-style:{face.style};src:url(data:font/ttf;base64,{content}) "
-            'format("truetype")}'
+            f"font-style:{face.style};src:url(data:font/woff2;base64,{content}) "
+            'format("woff2")}'
         )
     return "\n".join(rules)

@@ -1,4 +1,4 @@
-"""Make the six font files beside this script from the foundry's own TrueType files.
+"""Make the font files beside this script from the foundry's own TrueType files.
 
 Run once, by hand, when the foundry publishes a new version::
 
@@ -51,14 +51,18 @@ SUPERSCRIPT_MINUS = 0x207B
 
 
 def main(folders: list[Path]) -> None:
-    """Write all six files."""
+    """Write all six faces for the report, and the sans ones again for the pictures."""
     for folder, source, family, style, target in FACES:
         font = TTFont(folders[folder] / source)
+        font.recalcTimestamp = False
         _subset(font)
         if SUPERSCRIPT_MINUS not in font.getBestCmap():
             _add_superscript_minus(font)
         _rename(font, f"Reanalysis {family}", style)
-        font.save(HERE / target, reorderTables=True)
+        if family == "Sans":
+            font.save(HERE / target, reorderTables=True)  # for the pictures
+        font.flavor = "woff2"
+        font.save((HERE / target).with_suffix(".woff2"), reorderTables=False)
 
 
 def _subset(font: TTFont) -> None:

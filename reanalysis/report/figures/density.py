@@ -24,8 +24,8 @@ from reanalysis.report.figures.style import Absent, Bar
 from reanalysis.study.distributions import Distribution
 
 FloatArray = NDArray[np.float64]
-POINTS = 400
-HEIGHT = 56.0
+POINTS = 200
+HEIGHT = 51.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -221,7 +221,14 @@ def _draw_words(axes: Axes, data: DensityData, top: float) -> None:
         return
     x, y, side = flank
     gap = 0.008 * float(data.grid[-1] - data.grid[0])
-    axes.text(x + side * gap, y, data.prior_words, va="center", ha="left" if side > 0 else "right", **words)
+    axes.text(
+        x + side * gap,
+        y + 0.02 * top,
+        data.prior_words,
+        va="bottom",
+        ha="left" if side > 0 else "right",
+        **words,
+    )
 
 
 def _corner_on_right(data: DensityData, top: float) -> bool:

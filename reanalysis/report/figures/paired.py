@@ -6,7 +6,6 @@ import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from statistics import median
-from typing import Any
 
 from matplotlib.axes import Axes
 
@@ -156,15 +155,29 @@ def _draw_row(axes: Axes, row: PairedRow, y: float) -> None:
     if row.matters_beyond is not None:
         start, end = max(low, -row.matters_beyond), min(high, row.matters_beyond)
         axes.fill_between([start, end], y - 0.47, y + 0.47, color=style.BAND, linewidth=0, zorder=0.5)
-    words: dict[str, Any] = {"va": "center", "ha": "left", "fontsize": style.SMALL_TEXT, "style": "italic"}
-    if isinstance(row.confidence, Absent):
-        style.edge_text(axes, 1.5, y + 0.19, row.confidence.words, color=style.PETROL, zorder=5, **words)
-    else:
-        style.draw_confidence(axes, row.confidence, y + 0.19)
-    if isinstance(row.credible, Absent):
-        style.edge_text(axes, 1.5, y - 0.19, row.credible.words, color=style.OCHRE_TEXT, zorder=5, **words)
-    else:
-        style.draw_credible(axes, row.credible, y - 0.19)
+    for mark, offset, colour in (
+        (row.confidence, 0.19, style.PETROL),
+        (row.credible, -0.19, style.OCHRE_TEXT),
+    ):
+        if isinstance(mark, Absent):
+            x = _clear_of_zero(axes, mark.words)
+            style.edge_text(axes, x, y + offset, mark.words, color=colour, va="center", style="italic",
+                            fontsize=style.SMALL_TEXT)  # fmt: skip
+        elif isinstance(mark, Bar):
+            style.draw_confidence(axes, mark, y + offset)
+        else:
+            style.draw_credible(axes, mark, y + offset)
+
+
+def _clear_of_zero(axes: Axes, words: str) -> float:
+    """Return where words start, in mm from the axis' left end, so that the zero line does not cross them."""
+    low, high = axes.get_xlim()
+    width = style.size_of(axes)[0]
+    zero = -low / (high - low) * width
+    length = style.text_width(words, style.SMALL_TEXT)
+    if zero < 0.0 or zero > length + 3.0:
+        return 1.5
+    return zero + 1.5 if width - zero > length + 2.0 else width - length
 
 
 def _tags(axes: Axes, data: PairedData) -> None:

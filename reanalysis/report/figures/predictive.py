@@ -17,9 +17,9 @@ from reanalysis.report.figures.smooth import density
 
 FloatArray = NDArray[np.float64]
 CURVES, REPLICATES = 30, 200
-POINTS = 300
+POINTS = 120
 GROUPS, MOST_COUNTS = 10, 16
-HEIGHT, BOTTOM, LEFT = 52.0, 11.0, 13.0
+HEIGHT, BOTTOM, LEFT = 49.0, 11.0, 13.0
 
 
 @dataclass(frozen=True, slots=True)

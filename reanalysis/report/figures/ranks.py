@@ -16,7 +16,7 @@ from reanalysis.report.fonts import SANS
 
 FloatArray = NDArray[np.float64]
 FEWEST, MOST, PANEL_HEIGHT, LABEL_HEIGHT, GAP = 2, 4, 22.0, 9.0, 6.0
-POINTS = 60
+POINTS = 50
 
 
 @dataclass(frozen=True, slots=True)

@@ -24,6 +24,7 @@ from matplotlib.ticker import MaxNLocator
 from matplotlib.transforms import blended_transform_factory
 
 from reanalysis.report import numbers
+from reanalysis.report.figures.compact import compact
 from reanalysis.report.fonts import SANS, register_fonts
 
 INK, SOFT, RULE = "#1d2329", "#5b6670", "#c9ced3"
@@ -144,7 +145,7 @@ def to_svg(figure: Figure) -> str:
     nothing = {"Date": None, "Creator": None, "Format": None, "Type": None}
     figure.savefig(buffer, format="svg", transparent=True, metadata=nothing, dpi=250)
     text = buffer.getvalue()
-    return text[text.index("<svg") :]
+    return compact(text[text.index("<svg") :])
 
 
 def text_width(text: str, size: float = TEXT, weight: str = "normal") -> float:

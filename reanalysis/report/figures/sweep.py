@@ -17,7 +17,7 @@ from reanalysis.sensitivity.result import Sweep, TippingPrior
 
 LEFT, RIGHT = 24.0, 38.0
 """Widths in mm of the number column at the left and of the curves' names at the right."""
-PLOT, BOTTOM, LANE = 37.0, 11.0, 4.2
+PLOT, BOTTOM, LANE = 34.0, 11.0, 4.2
 GAP = 3.0
 """Least distance in mm between a name and the next mark's line."""
 
@@ -193,7 +193,7 @@ def _draw_mark(axes: Axes, mark: Mark, place: float, lane: int) -> None:
         line = {"linewidth": 0.8, "color": style.INK, "dashes": (4, 2.5), "zorder": 1}
     axes.plot([mark.width] * 2, [-0.02, foot + 2.6 * millimetre], clip_on=False, **line)
     colour = style.INK if mark.tipping else style.PRIOR_TEXT
-    style.edge_text(axes, place + 0.9, foot, mark.words, va="bottom", color=colour,
+    style.edge_text(axes, place + 1.2, foot, mark.words, va="bottom", color=colour,
                     fontsize=style.SMALL_TEXT)  # fmt: skip
 
 

@@ -1,0 +1,307 @@
+"""The numbered tables of a report, as rows of text."""
+
+from __future__ import annotations
+
+import math
+
+from reanalysis.bayesian.check import FAILED, SOUND
+from reanalysis.bayesian.result import Marginal, NoPosterior, PosteriorResult
+from reanalysis.comparison.result import Compared
+from reanalysis.effects.result import FrequentistAnswer, PosteriorAnswer, TailProbability
+from reanalysis.frequentist.result import Estimate
+from reanalysis.report import numbers
+from reanalysis.report.blocks import Cell, ColumnGroup, SpanningCell, Table, TableColumn, cap_rows
+from reanalysis.report.context import Context, decimals_of
+from reanalysis.report.priors_in_words import describe
+
+CSV = "estimates.csv"
+
+
+def side_by_side(context: Context) -> Table:
+    """Every coefficient, both ways, and the residual standard deviation where there is one."""
+    level = context.level
+    rows = [
+        _coefficient_row(context, column) for column in range(len(context.analysis.prepared.design.columns))
+    ]
+    rows += [_auxiliary_row(context, position) for position in range(_auxiliaries(context))]
+    shown, hint = cap_rows(rows, CSV)
+    fit = context.analysis.frequentist
+    return Table(
+        number=context.numbering.table(),
+        caption="Every coefficient, both ways. Credible intervals are equal-tailed.",
+        columns=(
+            TableColumn(""),
+            TableColumn("unit"),
+            TableColumn("estimate", "frequentist", "right"),
+            TableColumn(f"{level} confidence", "frequentist", "right"),
+            TableColumn("p", "frequentist", "right"),
+            TableColumn("median", "bayesian", "right"),
+            TableColumn(f"{level} credible", "bayesian", "right"),
+            TableColumn("P(above 0)", "bayesian", "right"),
+        ),
+        rows=shown,
+        groups=(
+            ColumnGroup("", "none", 2),
+            ColumnGroup(f"Frequentist, {fit.method} ({fit.distribution})", "frequentist", 3),
+            ColumnGroup(f"Bayesian, {context.main_prior} prior", "bayesian", 3),
+        ),
+        note=_coding_note(context),
+        csv_hint=hint,
+    )
+
+
+def tests_and_probabilities(context: Context) -> Table:
+    """For each question, the p-values beside the posterior probabilities that answer the same claim."""
+    questions = context.analysis.questions
+    return Table(
+        number=context.numbering.table(),
+        caption=(
+            "The same claims, tested and weighed. A small p speaks against its null hypothesis; "
+            "a large probability speaks for the claim."
+        ),
+        columns=(
+            TableColumn(""),
+            TableColumn("no effect", "frequentist", "right"),
+            TableColumn("not in the direction", "frequentist", "right"),
+            TableColumn("not beyond", "frequentist", "right"),
+            TableColumn("not negligible", "frequentist", "right"),
+            TableColumn("in the direction", "bayesian", "right"),
+            TableColumn("beyond", "bayesian", "right"),
+            TableColumn("negligible", "bayesian", "right"),
+        ),
+        rows=tuple(
+            (compared.question.name, *_p_cells(compared), *_probability_cells(compared))
+            for compared in questions
+        ),
+        groups=(
+            ColumnGroup("", "none", 1),
+            ColumnGroup("p, against the hypothesis of …", "frequentist", 4),
+            ColumnGroup("posterior probability that it is …", "bayesian", 3),
+        ),
+        note=(
+            "Beyond and negligible are measured by the smallest effect that matters. “Not negligible” is "
+            "tested by two one-sided tests (Schuirmann 1987): a small p means too small to matter. "
+            "No p-value is the probability of its hypothesis."
+        ),
+    )
+
+
+def prior_sets(context: Context, compared: Compared) -> Table:
+    """One question under every prior set."""
+    decimals, unit = decimals_of(compared), compared.question.unit
+    rows = []
+    for reading in compared.readings:
+        result = context.analysis.posterior(reading.prior_set)
+        prior = result.prior_set.coefficients[compared.question.column]
+        head = (reading.prior_set, describe(prior.distribution, unit), prior.origin)
+        rows.append((*head, *_answer_cells(reading.answer, decimals)))
+    return Table(
+        number=context.numbering.table(),
+        caption=f"{compared.question.name}, under each prior set{' (' + unit + ')' if unit else ''}.",
+        columns=(
+            TableColumn("prior set"),
+            TableColumn("prior of this effect"),
+            TableColumn("where it comes from"),
+            TableColumn("median", "bayesian", "right"),
+            TableColumn(f"{context.level} credible", "bayesian", "right"),
+            TableColumn("P(direction)", "bayesian", "right"),
+            TableColumn("P(beyond)", "bayesian", "right"),
+        ),
+        rows=tuple(rows),
+    )
+
+
+def computation(context: Context) -> Table:
+    """The computation check of every prior set."""
+    return Table(
+        number=context.numbering.table(),
+        caption="Computation check of each prior set.",
+        columns=(
+            TableColumn("prior set"),
+            TableColumn("verdict"),
+            TableColumn("divergences", "none", "right"),
+            TableColumn("largest R-hat", "none", "right"),
+            TableColumn("least bulk ESS", "none", "right"),
+            TableColumn("least tail ESS", "none", "right"),
+            TableColumn("least E-BFMI", "none", "right"),
+            TableColumn("runs", "none", "right"),
+        ),
+        rows=tuple(_check_row(result) for result in context.analysis.posteriors),
+        note=(
+            f"Sound: R-hat at most {numbers.given(SOUND.rhat)}, both effective sample sizes (ESS) at least "
+            f"{numbers.count(SOUND.ess)}, no divergent transition, E-BFMI at least {numbers.given(SOUND.bfmi)}. "
+            f"Failed: R-hat above {numbers.given(FAILED.rhat)}, an ESS below {numbers.count(FAILED.ess)}, more than "
+            f"{numbers.percent(FAILED.divergent_share)} divergent, or E-BFMI below {numbers.given(FAILED.bfmi)}. "
+            "What is not sound is run again with more tuning and a higher target acceptance."
+        ),
+    )
+
+
+def goodness(context: Context) -> Table:
+    """Measures of the whole frequentist fit."""
+    measures = context.analysis.frequentist.goodness
+    pairs = [
+        ("rows", numbers.count(measures.n)),
+        ("residual degrees of freedom", numbers.count(measures.df_residual)),
+        ("log-likelihood", numbers.estimate(measures.loglik, 2)),
+        ("deviance (null model)", f"{_four(measures.deviance)} ({_four(measures.null_deviance)})"),
+        ("AIC", numbers.estimate(measures.aic, 2)),
+        ("Pearson chi-squared", _four(measures.pearson_chi2)),
+    ]
+    if measures.r_squared is not None:
+        pairs.append((f"R² ({measures.r_squared_kind})", numbers.estimate(measures.r_squared, 3)))
+        pairs.append(("residual standard deviation", _four(math.sqrt(measures.scale))))
+    return Table(
+        number=context.numbering.table(),
+        caption="The frequentist fit as a whole.",
+        columns=(TableColumn("measure"), TableColumn("value", "frequentist", "right")),
+        rows=tuple(pairs),
+    )
+
+
+def priors_in_full(context: Context) -> Table:
+    """Every prior of every parameter, with its origin."""
+    design = context.analysis.prepared.design
+    units = {column.name: column.unit for column in design.columns} | {"sigma": design.response.unit}
+    rows = [
+        (prior_set.name, prior.name, describe(prior.distribution, units.get(prior.name, "")), prior.origin)
+        for prior_set in context.analysis.prepared.prior_sets
+        for prior in (*prior_set.coefficients, *prior_set.auxiliary)
+    ]
+    shown, hint = cap_rows(rows, "results.json")
+    return Table(
+        number=context.numbering.table(),
+        caption="Every prior, resolved to numbers.",
+        columns=(
+            TableColumn("prior set"),
+            TableColumn("parameter"),
+            TableColumn("prior"),
+            TableColumn("origin"),
+        ),
+        rows=shown,
+        note="The intercept’s prior is about the outcome at the centre of the predictors unless said otherwise.",
+        csv_hint=hint,
+    )
+
+
+def _coefficient_row(context: Context, position: int) -> tuple[Cell, ...]:
+    column = context.analysis.prepared.design.columns[position]
+    result = context.analysis.frequentist.coefficients[position]
+    fit = context.main_fit
+    marginal = None if fit is None else fit.coefficients[position]
+    spread = result.se if isinstance(result, Estimate) else (marginal.sd if marginal else 0.0)
+    decimals = _decimals(spread, marginal)
+    head = (context.label(position), column.unit or numbers.NONE)
+    if isinstance(result, Estimate):
+        left: tuple[Cell, ...] = (
+            numbers.estimate(result.estimate, decimals),
+            numbers.interval(result.low, result.high, decimals),
+            numbers.p_value(result.p),
+        )
+    else:
+        left = (SpanningCell(f"no estimate exists: {result.reason}", 3),)
+    return (*head, *left, *_marginal_cells(context, marginal, decimals))
+
+
+def _auxiliary_row(context: Context, position: int) -> tuple[Cell, ...]:
+    design, fit = context.analysis.prepared.design, context.main_fit
+    marginal = None if fit is None else fit.auxiliary[position]
+    sigma = math.sqrt(context.analysis.frequentist.goodness.scale)
+    decimals = _decimals(marginal.sd if marginal else sigma / 10.0, marginal)
+    head = ("Residual standard deviation", design.response.unit or numbers.NONE)
+    left = (numbers.estimate(sigma, decimals), numbers.NONE, numbers.NONE)
+    return (*head, *left, *_marginal_cells(context, marginal, decimals)[:2], numbers.NONE)
+
+
+def _marginal_cells(context: Context, marginal: Marginal | None, decimals: int) -> tuple[Cell, ...]:
+    if marginal is None:
+        main = context.analysis.main
+        reason = main.reason if isinstance(main, NoPosterior) else ""
+        return (SpanningCell(f"no posterior: {reason}", 3),)
+    return (
+        numbers.estimate(marginal.median, decimals),
+        numbers.interval(marginal.low, marginal.high, decimals),
+        numbers.probability(marginal.prob_positive, marginal.mcse_prob_positive),
+    )
+
+
+def _decimals(spread: float, marginal: Marginal | None) -> int:
+    if marginal is None:
+        return numbers.choose_decimals(spread)
+    return numbers.choose_decimals(spread, marginal.mcse_median, marginal.mcse_low, marginal.mcse_high)
+
+
+def _auxiliaries(context: Context) -> int:
+    return 0 if context.analysis.prepared.design.family.auxiliary is None else 1
+
+
+def _coding_note(context: Context) -> str:
+    design = context.analysis.prepared.design
+    parts = []
+    if design.response.event is not None:
+        parts.append(f"Models the probability that {design.response.name} = {design.response.event}.")
+    for factor in design.factors:
+        counts = ", ".join(
+            f"{level} {numbers.count(number)}"
+            for level, number in zip(factor.levels, factor.counts, strict=True)
+        )
+        parts.append(f"{factor.name} is compared with {factor.reference} (rows: {counts}).")
+    return " ".join(parts)
+
+
+def _p_cells(compared: Compared) -> tuple[Cell, ...]:
+    answer = compared.frequentist
+    if not isinstance(answer, FrequentistAnswer):
+        return (SpanningCell("no estimate exists", 4),)
+    size = answer.size
+    sizes = (
+        (numbers.NONE,) * 2
+        if size is None
+        else (
+            numbers.p_value(size.p_beyond),
+            numbers.p_value(size.p_equivalence),
+        )
+    )
+    return (numbers.p_value(answer.p), numbers.p_value(answer.p_direction), *sizes)
+
+
+def _probability_cells(compared: Compared) -> tuple[Cell, ...]:
+    answer = compared.main.answer
+    if not isinstance(answer, PosteriorAnswer):
+        return (SpanningCell("no posterior", 3),)
+    return (_of(answer.direction), _of(answer.beyond), _of(answer.negligible))
+
+
+def _answer_cells(answer: object, decimals: int) -> tuple[Cell, ...]:
+    if not isinstance(answer, PosteriorAnswer):
+        return (SpanningCell("no posterior", 4),)
+    return (
+        numbers.estimate(answer.median, decimals),
+        numbers.interval(answer.low, answer.high, decimals),
+        _of(answer.direction),
+        _of(answer.beyond),
+    )
+
+
+def _of(probability: TailProbability | None) -> str:
+    return numbers.NONE if probability is None else numbers.probability(probability.value, probability.mcse)
+
+
+def _check_row(result: PosteriorResult) -> tuple[Cell, ...]:
+    check = result.check
+    if check is None:
+        return (result.prior_set.name, SpanningCell(f"not run: {getattr(result, 'reason', '')}", 7))
+    return (
+        result.prior_set.name,
+        check.verdict,
+        numbers.count(check.divergences),
+        numbers.rhat(check.max_rhat),
+        numbers.count(check.min_ess_bulk),
+        numbers.count(check.min_ess_tail),
+        numbers.estimate(check.min_bfmi, 2),
+        numbers.count(check.attempts),
+    )
+
+
+def _four(value: float) -> str:
+    return numbers.given(float(f"{value:.4g}"))
