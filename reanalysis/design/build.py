@@ -209,16 +209,6 @@ def _shape_problems(expanded: tuple[Expanded, ...], rows: int) -> list[Problem]:
     problems: list[Problem] = []
     for column in expanded:
         values = column.numbers
-        # A column of zeros comes from a combination of levels without rows; the outlook reports it.
-        if column.variables and np.ptp(values) == 0.0 and values[0] != 0.0:
-            problems.append(
-                Problem(
-                    where=f"column {column.name} of the model",
-                    found=f"it is {values[0]:g} in every row used",
-                    allowed="a column that varies",
-                    advice="take the term out of the formula",
-                )
-            )
         if not np.all(np.isfinite(values)):
             problems.append(
                 Problem(
@@ -226,6 +216,16 @@ def _shape_problems(expanded: tuple[Expanded, ...], rows: int) -> list[Problem]:
                     found="a product is too large for a number",
                     allowed="finite values",
                     advice="rescale the columns of this interaction",
+                )
+            )
+        # A column of zeros comes from a combination of levels without rows; the outlook reports it.
+        elif column.variables and np.ptp(values) == 0.0 and values[0] != 0.0:
+            problems.append(
+                Problem(
+                    where=f"column {column.name} of the model",
+                    found=f"it is {values[0]:g} in every row used",
+                    allowed="a column that varies",
+                    advice="take the term out of the formula",
                 )
             )
     for name, count in Counter(column.name for column in expanded).items():

@@ -73,10 +73,12 @@ def expand(
             functions[f"basis_{name}"] = _giving(variable.numbers)
     terms = [_render(term, variables, safe) for term in parts.terms]
     text = " + ".join(["1" if parts.intercept else "0", *terms])
-    matrices = design_matrices(text, pd.DataFrame(frame), na_action="error", env=Environment([functions]))
+    with np.errstate(over="ignore"):  # products that are too large are reported by the caller
+        matrices = design_matrices(text, pd.DataFrame(frame), na_action="error", env=Environment([functions]))
+    written = {term.key: term.factors for term in parts.terms}
     columns: list[Expanded] = []
     for term in matrices.common.terms.values():
-        columns += _columns_of(term, by_spelling)
+        columns += _columns_of(term, by_spelling, written)
     return tuple(columns)
 
 
@@ -106,17 +108,24 @@ def _render(
     return ":".join(_spelling(variables[factor], safe[factor]) for factor in ordered)
 
 
-def _columns_of(term: Any, by_spelling: Mapping[str, Variable]) -> list[Expanded]:
+def _columns_of(
+    term: Any,
+    by_spelling: Mapping[str, Variable],
+    written: Mapping[frozenset[formula.Factor], tuple[formula.Factor, ...]],
+) -> list[Expanded]:
     data = np.asarray(term.data, dtype=np.float64)
     data = data.reshape(len(data), -1)
     if term.name == "Intercept":
         return [Expanded("Intercept", "Intercept", (), data[:, 0])]
     used = tuple(by_spelling[component.name] for component in term.components)
+    # Names keep the author's order; a term that formulae has added for full rank has none.
+    factors = tuple(variable.factor for variable in used)
+    order = [factors.index(factor) for factor in written.get(frozenset(factors), factors)]
     labels = [
         _labels_of(component, variable) for component, variable in zip(term.components, used, strict=True)
     ]
-    names = [":".join(parts) for parts in product(*labels)]
-    public = ":".join(variable.name for variable in used)
+    names = [":".join(parts[position] for position in order) for parts in product(*labels)]
+    public = ":".join(used[position].name for position in order)
     return [
         Expanded(name, public, used, data[:, position])
         for position, name in zip(range(data.shape[1]), names, strict=True)
