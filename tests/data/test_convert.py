@@ -115,6 +115,7 @@ def test_mostly_labels_stay_labels() -> None:
     """Below half numbers, a column is a factor; so are doses and plot numbers."""
     assert list(converted(["1", "x", "y"])[0].cat.categories) == ["1", "x", "y"]
     assert list(converted(["5 mg", "10 mg"])[0].cat.categories) == ["10 mg", "5 mg"]
+    assert len(converted([f"{i} mg" for i in range(30)])[0].cat.categories) == 30
     assert len(converted([f"{i}{end}" for i in range(20) for end in "abc"])[0].cat.categories) == 60
 
 
@@ -164,6 +165,8 @@ def test_stand_ins_for_missing_are_noted_not_changed() -> None:
     assert converted(["-10", "-9", "-9", "3"])[1] == ()
     assert converted(["3", "4", "-99"])[1] == ()
     assert converted(["90", "50", "99", "99"])[1] == ()
+    assert converted(["1", "2", "99", "99"])[1][0].startswith("Column v: 99 occurs in 2 rows")
+    assert converted(["-500", "99", "99", "500"])[1] == ()
 
 
 def test_blanks_around_labels_are_removed_and_noted() -> None:

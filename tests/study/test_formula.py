@@ -40,6 +40,8 @@ def rendered(text: str) -> str:
         ("y ~ a + b + a*b", "y ~ 1 + a + b + a:b"),
         ("y ~ a*b + a*c", "y ~ 1 + a + b + c + a:b + a:c"),
         ("y ~ ((a))", "y ~ 1 + a"),
+        ("y ~ (a*b):c + a:c", "y ~ 1 + a:c + b:c + a:b:c"),
+        ("y ~ bs(x, df=5, degree=5)", "y ~ 1 + bs(x, df=5, degree=5)"),
         ("log(y) ~ log1p(a)", "log(y) ~ 1 + log1p(a)"),
         ("y ~ poly(a, degree=2)", "y ~ 1 + poly(a, 2)"),
         ("y ~ poly(log(a), 3)", "y ~ 1 + poly(log(a), 3)"),
@@ -161,6 +163,8 @@ def test_render_renames_columns_and_functions() -> None:
         ("y ~ bs(x)", "`bs` needs `df`"),
         ("y ~ bs(x, 4, 3)", "this argument has no name"),
         ("y ~ bs(x, df=2)", "df = 2 is too small"),
+        ("y ~ bs(x, df=8, degree=6)", "1 to 5"),
+        ("y ~ bs(x, df=4, degree=5)", "df = 4 is too small"),
         ("y ~ (a + b)**9", "small whole number"),
         ("y ~ (a + b)**c", "small whole number"),
         ("y ~ (a + b)**2**2", "twice in a row"),
@@ -198,6 +202,14 @@ def test_the_place_is_marked() -> None:
     lines = caught.value.problems[0].found.splitlines()
     assert lines[1] == "        漢字 ~ log(x) + offset(z)"
     assert lines[2] == " " * (8 + len("漢字 ~ log(x) + ") + 2) + "^^^^^^"
+
+
+def test_the_response_is_marked_where_it_comes_again() -> None:
+    """The caret stands under the response on the right-hand side, not on the left."""
+    with pytest.raises(FormulaError, match="is also on the right-hand side") as caught:
+        check_formula("yy ~ x:yy + z")
+
+    assert caught.value.problems[0].found.splitlines()[2] == " " * (8 + 7) + "^^"
 
 
 def test_a_long_formula_is_shown_around_the_place() -> None:
