@@ -10,7 +10,7 @@ from jinja2 import Environment, FileSystemLoader, StrictUndefined, Template
 from markupsafe import Markup
 
 from reanalysis.report.blocks import Answer, Block, Cell, Document, RichText, SpanningCell, Table, plain_text
-from reanalysis.report.fonts import font_face_css, templates_folder
+from reanalysis.report.fonts import Container, font_face_css, templates_folder
 
 RUNNING_LENGTH = 90
 """Characters of the title that fit at the foot of a page."""
@@ -37,6 +37,11 @@ def render_html(document: Document) -> str:
     ReportError
         When the templates are not installed.
     """
+    return render_page(document, "woff2")
+
+
+def render_page(document: Document, container: Container) -> str:
+    """Return the page of `render_html` with its fonts in a chosen container."""
     folder = templates_folder()
     styles = {
         f"{name}_css": Markup((folder / f"{name}.css").read_text(encoding="utf-8"))  # noqa: S704 - our own file
@@ -47,7 +52,7 @@ def render_html(document: Document) -> str:
         document=document,
         answers=answers,
         running_title=_shorten(document.title),
-        font_css=Markup(font_face_css()),  # noqa: S704 - base64 of our own files
+        font_css=Markup(font_face_css(container)),  # noqa: S704 - base64 of our own files
         **styles,
     )
 

@@ -12,7 +12,7 @@ from weasyprint.urls import FatalURLFetchingError, URLFetcher
 
 from reanalysis.errors import Problem, ReportError
 from reanalysis.report.blocks import Document
-from reanalysis.report.html import render_html
+from reanalysis.report.html import render_page
 
 EPOCH = "1767225600"
 """Time stamp written into embedded fonts (1 January 2026), so that equal reports are equal files."""
@@ -29,7 +29,7 @@ def render_pdf(document: Document) -> bytes:
     ReportError
         When the PDF writer reports an error, such as a picture without an alternative text.
     """
-    return pdf_from_html(render_html(document), document.title)
+    return pdf_from_html(render_page(document, "ttf"), document.title)
 
 
 def pdf_from_html(html: str, title: str) -> bytes:

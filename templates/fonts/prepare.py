@@ -51,7 +51,7 @@ SUPERSCRIPT_MINUS = 0x207B
 
 
 def main(folders: list[Path]) -> None:
-    """Write all six faces for the report, and the sans ones again for the pictures."""
+    """Write all six faces, each as TrueType and as WOFF2."""
     for folder, source, family, style, target in FACES:
         font = TTFont(folders[folder] / source)
         font.recalcTimestamp = False
@@ -59,9 +59,8 @@ def main(folders: list[Path]) -> None:
         if SUPERSCRIPT_MINUS not in font.getBestCmap():
             _add_superscript_minus(font)
         _rename(font, f"Reanalysis {family}", style)
-        if family == "Sans":
-            font.save(HERE / target, reorderTables=True)  # for the pictures
-        font.flavor = "woff2"
+        font.save(HERE / target, reorderTables=True)  # for pictures and PDF: quick to read
+        font.flavor = "woff2"  # for HTML: small
         font.save((HERE / target).with_suffix(".woff2"), reorderTables=False)
 
 

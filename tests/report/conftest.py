@@ -35,9 +35,15 @@ def demo():
 
 
 @pytest.fixture(scope="session")
-def document(inv, demo):
+def drawn(inv, demo):
+    """All pictures of the demonstration report."""
+    return demo.pictures(inv)
+
+
+@pytest.fixture(scope="session")
+def document(demo, drawn):
     """The demonstration report."""
-    return demo.document(inv)
+    return demo.document(drawn)
 
 
 @pytest.fixture(scope="session")

@@ -59,9 +59,8 @@ def pictures(inv):
     return result
 
 
-def document(inv, title="Do liner bags keep stored apples firm?"):
-    """The demonstration report."""
-    drawn = pictures(inv)
+def document(drawn, title="Do liner bags keep stored apples firm?"):
+    """The demonstration report, with the pictures that `pictures` has drawn."""
     return b.Document(
         title=title,
         kicker="Re-analysis report",

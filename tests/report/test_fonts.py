@@ -34,10 +34,21 @@ def test_names_respect_the_reserved_font_name():
     assert "SIL OPEN FONT LICENSE Version 1.1" in (folder / "OFL.txt").read_text(encoding="utf-8")
 
 
-def test_the_css_carries_all_six_faces():
+@pytest.mark.parametrize(("container", "name"), [("woff2", "woff2"), ("ttf", "truetype")])
+def test_the_css_carries_all_six_faces(container, name):
     """One rule a face, each with its file inside."""
-    css = fonts.font_face_css()
-    assert css.count("@font-face") == css.count("data:font/woff2;base64,") == 6
+    css = fonts.font_face_css(container)
+    assert css.count("@font-face") == css.count(f"data:font/{container};base64,") == 6
+    assert css.count(f'format("{name}")') == 6
+
+
+def test_both_containers_hold_the_same_face():
+    """HTML and PDF show the same glyphs."""
+    folder = fonts.templates_folder() / "fonts"
+    for face in fonts.FACES:
+        small, quick = (TTFont(folder / f"{face.file}.{kind}") for kind in ("woff2", "ttf"))
+        assert small.getBestCmap() == quick.getBestCmap()
+        assert small["hmtx"].metrics == quick["hmtx"].metrics
 
 
 def test_missing_templates_are_an_error(monkeypatch, tmp_path):

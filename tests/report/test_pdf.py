@@ -22,6 +22,12 @@ def reader(pdf):
     return PdfReader(io.BytesIO(pdf))
 
 
+@pytest.fixture(scope="module")
+def texts(reader):
+    """The text of each page."""
+    return [page.extract_text() for page in reader.pages]
+
+
 def _tags(node, found):
     """All structure types of a tagged PDF, in order."""
     node = node.get_object() if hasattr(node, "get_object") else node
@@ -43,9 +49,9 @@ def test_pages_are_a4_and_few(reader):
     assert len(reader.pages) == 8
 
 
-def test_three_answers_their_cautions_and_the_contents_fit_page_1(reader):
+def test_three_answers_their_cautions_and_the_contents_fit_page_1(texts):
     """Page 1 answers; the rest proves."""
-    first, second = (reader.pages[k].extract_text() for k in (0, 1))
+    first, second = texts[:2]
     for words in (
         "Film liner against no liner",
         "Each further day in store",
@@ -56,21 +62,19 @@ def test_three_answers_their_cautions_and_the_contents_fit_page_1(reader):
     assert second.lstrip().startswith("Side by side")
 
 
-def test_pages_are_numbered_and_name_the_report(reader):
+def test_pages_are_numbered_and_name_the_report(texts):
     """Page 1 has its number only; the others have the running title as well."""
-    texts = [page.extract_text() for page in reader.pages]
     assert all(f"{k} / 8" in text for k, text in enumerate(texts, start=1))
     assert texts[0].count("Do liner bags keep stored apples firm?") == 1
     assert all("Do liner bags keep stored apples firm?" in text for text in texts[1:])
 
 
-def test_the_contents_know_their_pages(reader):
+def test_the_contents_know_their_pages(texts):
     """Page numbers of the contents are those where the sections begin."""
-    text = reader.pages[0].extract_text()
     for heading in ("Side by side", "Does the model fit?", "For the record"):
         # From page 2 on: page 1 names all sections itself.
-        page = next(k for k, page in enumerate(reader.pages[1:], start=2) if heading in page.extract_text())
-        assert f"{heading} {page}" in text
+        page = next(k for k, text in enumerate(texts[1:], start=2) if heading in text)
+        assert f"{heading} {page}" in texts[0]
 
 
 def test_the_pdf_is_tagged(reader):
@@ -109,19 +113,21 @@ def test_all_fonts_are_embedded_and_ours(reader):
     assert all(name.startswith("Reanalysis") for name in names)
 
 
-def test_long_tables_repeat_their_heads(reader):
+def test_long_tables_repeat_their_heads(texts):
     """Each page of a long table says what its columns are."""
-    pages = [page.extract_text() for page in reader.pages]
-    rows = [text for text in pages if "against orchard 00" in text]
+    rows = [text for text in texts if "against orchard 00" in text]
     assert len(rows) >= 2
     assert all("Least squares" in text and "P(above 0)" in text for text in rows)
     assert any("The first 60 of 77 rows; all of them are in estimates.csv." in text for text in rows)
 
 
-def test_equal_reports_are_equal_files(pdf, document, monkeypatch):
-    """Same bytes again, and the clock setting of the environment is as it was."""
+def test_equal_reports_are_equal_files(pdf, document, monkeypatch, caplog):
+    """Same bytes again, no word of warning, and the clock setting of the environment is as it was."""
     monkeypatch.delenv("SOURCE_DATE_EPOCH", raising=False)
-    assert render_pdf(document) == pdf
+    with caplog.at_level("WARNING", logger="weasyprint"):
+        again = render_pdf(document)
+    assert again == pdf
+    assert [record.getMessage() for record in caplog.records] == []
     assert "SOURCE_DATE_EPOCH" not in os.environ
 
 
@@ -158,10 +164,3 @@ def test_a_picture_without_words_stops_the_report():
     image = '<img src="data:image/svg+xml;base64,PHN2ZyB4bWxucz0iaHR0cDovL3d3dy53My5vcmcvMjAwMC9zdmciLz4=">'
     with pytest.raises(ReportError, match="no required alt description"):
         pdf_from_html(f"<html lang=en><title>t</title><body><p>x</p>{image}</body>", "t")
-
-
-def test_the_writer_has_nothing_to_complain_about(document, caplog):
-    """No warning about styles, fonts or markup."""
-    with caplog.at_level("WARNING", logger="weasyprint"):
-        render_pdf(document)
-    assert [record.getMessage() for record in caplog.records] == []

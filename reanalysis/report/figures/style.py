@@ -9,6 +9,7 @@ from __future__ import annotations
 import io
 import math
 import warnings
+from bisect import bisect_right
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
@@ -177,9 +178,8 @@ def _fit(row: str, width: float, size: float) -> str:
     if text_width(row, size) <= width:
         return row
     row = row.removesuffix(" …")
-    while row and text_width(f"{row}…", size) > width:
-        row = row[:-1]
-    return f"{row}…"
+    kept = bisect_right(range(1, len(row) + 1), width, key=lambda end: text_width(f"{row[:end]}…", size))
+    return f"{row[:kept]}…"
 
 
 def tick_values(low: float, high: float, wanted: int) -> tuple[list[float], list[str]]:

@@ -17,12 +17,6 @@ from reanalysis.report.figures.style import Absent, Bar, CoredBar
 pytestmark = pytest.mark.render
 
 
-@pytest.fixture(scope="module")
-def drawn(inv, demo):
-    """All pictures of the demonstration report."""
-    return demo.pictures(inv)
-
-
 def test_every_picture_is_svg_without_outside_references(drawn):
     """Plain SVG: no document type, no script, no link but to itself, no text of the user's in a comment."""
     assert len(drawn) == 13
