@@ -43,6 +43,9 @@ MOST_DIRECTIONS = 8
 """Signs are sought when the separated rows leave up to this many directions open; beyond, both signs
 are nearly always possible, and two linear programs for each column would take most of a second."""
 
+SAMPLE_PER_COLUMN = 10
+"""Rows of each outcome, for each column, that are tried before all rows are."""
+
 
 @dataclass(frozen=True, slots=True)
 class SeparatedColumn:
@@ -105,6 +108,8 @@ def find_separation(design: Design) -> Separation:
     # Written as "toward @ d >= 0", with equality in the rows that may not move at all.
     toward = np.where(y > 0.5, 1.0, -1.0)[:, None] * q
     fixed = y > 0.5 if design.family.name == "poisson" else nowhere
+    if design.family.name == "bernoulli" and _sample_overlaps(toward, y):
+        return Separation(nowhere, ())
     rows = _separated_rows(toward, fixed)
     if not np.any(rows):
         return Separation(rows, ())
@@ -115,6 +120,19 @@ def find_separation(design: Design) -> Separation:
     return Separation(
         rows, tuple(SeparatedColumn(int(column), _direction(cone, back[column])) for column in lost)
     )
+
+
+def _sample_overlaps(toward: FloatArray, y: FloatArray) -> bool:
+    """Whether some of the rows already rule separation out: further rows only add constraints."""
+    size = SAMPLE_PER_COLUMN * toward.shape[1]
+    if len(y) <= 4 * size:
+        return False
+    groups = (np.flatnonzero(y > 0.5), np.flatnonzero(y <= 0.5))
+    picks = [group[np.linspace(0, len(group) - 1, min(size, len(group))).astype(int)] for group in groups]
+    sample = toward[np.concatenate(picks)]
+    if find_basis(sample).rank < toward.shape[1]:
+        return False
+    return not np.any(_separated_rows(sample, np.zeros(len(sample), dtype=bool)))
 
 
 def _separated_rows(toward: FloatArray, fixed: BoolArray) -> BoolArray:
