@@ -26,6 +26,7 @@ LAYERS = (
     {"analysis"},
     {"report"},
     {"batch"},
+    {"commands"},
     {"cli", "__main__"},
 )
 """Rooms from the ground floor up; rooms on one floor do not import each other."""

@@ -17,7 +17,7 @@ from reanalysis.bayesian.result import (
     PosteriorResult,
     PriorSet,
 )
-from reanalysis.bayesian.sampler import RawDraws, SamplerSettings, derive_seed, sample
+from reanalysis.bayesian.sampler import RawDraws, sample
 from reanalysis.bayesian.scaling import (
     Scaling,
     centred_intercept,
@@ -27,6 +27,7 @@ from reanalysis.bayesian.scaling import (
     scaled_response,
     unscaled_draws,
 )
+from reanalysis.bayesian.settings import SamplerSettings, derive_seed
 from reanalysis.bayesian.summaries import summarise
 from reanalysis.design.model import Design
 

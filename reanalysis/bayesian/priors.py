@@ -22,7 +22,7 @@ import difflib
 from collections.abc import Mapping
 
 import numpy as np
-from scipy import stats
+from scipy import special
 
 from reanalysis.bayesian.result import ParameterPrior, PriorSet
 from reanalysis.design.model import Column, Design
@@ -212,7 +212,7 @@ def _doubt(column: Column, design: Design, question: QuestionSpec) -> ParameterP
     sides = " either way" if question.direction == "either" else ""
     return ParameterPrior(
         column.name,
-        Normal(sd=question.matters_beyond / float(stats.norm.isf(tail))),
+        Normal(sd=-question.matters_beyond / float(special.ndtri(tail))),
         f"5 % prior probability beyond the smallest effect that matters{sides}",
     )
 

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import hashlib
 from dataclasses import dataclass
 from typing import Any
 
@@ -11,33 +10,9 @@ import nutpie
 from numpy.typing import NDArray
 
 from reanalysis.bayesian.model import COEFFICIENTS
+from reanalysis.bayesian.settings import SamplerSettings
 
 FloatArray = NDArray[np.float64]
-
-
-@dataclass(frozen=True, slots=True)
-class SamplerSettings:
-    """Settings of one run.
-
-    Attributes
-    ----------
-    seed : int
-    draws, tune, chains : int
-        Kept and tuning iterations of each chain; number of chains.
-    target_accept : float
-    low_rank : bool
-        Whether the mass matrix adapts to correlated parameters.
-    cores : int
-        The draws are the same for any number.
-    """
-
-    seed: int
-    draws: int
-    tune: int
-    chains: int
-    target_accept: float
-    low_rank: bool
-    cores: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,15 +31,6 @@ class RawDraws:
     auxiliary: FloatArray
     diverging: NDArray[np.bool_]
     energy: FloatArray
-
-
-def derive_seed(base: int, label: str) -> int:
-    """Derive the seed of one fit from the study's seed and a label such as the prior set's name.
-
-    The same pair gives the same seed whatever the order of the fits and whoever runs them.
-    """
-    digest = hashlib.sha256(f"{base}/{label}".encode()).digest()
-    return int.from_bytes(digest[:4], "big") >> 1
 
 
 def sample(bound: Any, auxiliary: str | None, settings: SamplerSettings) -> RawDraws | None:

@@ -7,10 +7,8 @@ import pandas as pd
 from reanalysis.data.convert import Rules, convert_column
 from reanalysis.data.dataset import Dataset
 from reanalysis.data.delimited import read_delimited
-from reanalysis.data.excel import read_excel
 from reanalysis.data.fingerprint import Fingerprint, fingerprint
 from reanalysis.data.limits import DEFAULT_LIMITS, Limits
-from reanalysis.data.parquet import read_parquet
 from reanalysis.data.table import RawTable, Request, failure
 from reanalysis.errors import DataError
 from reanalysis.study.datafile import ENDINGS, format_of
@@ -88,8 +86,12 @@ def _read(study: Study, request: Request) -> RawTable:
         case "tsv":
             return read_delimited(path, "\t", request)
         case "parquet":
+            from reanalysis.data.parquet import read_parquet  # its library loads slowly
+
             return read_parquet(path, request)
         case "xlsx":
+            from reanalysis.data.excel import read_excel  # its library loads slowly
+
             return read_excel(path, request)
         case None:
             raise failure(path.name, "unknown ending", ", ".join(ENDINGS), "save the data in one of these")

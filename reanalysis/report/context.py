@@ -7,7 +7,7 @@ from itertools import count
 
 import numpy as np
 
-from reanalysis.analysis import Analysis
+from reanalysis.analysis.result import Analysis
 from reanalysis.bayesian.result import NoPosterior, PosteriorFit
 from reanalysis.comparison.result import Compared
 from reanalysis.effects.result import FrequentistAnswer, PosteriorAnswer, Question

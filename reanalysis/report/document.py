@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from reanalysis.analysis import Analysis
+from reanalysis.analysis.result import Analysis
 from reanalysis.report import numbers
 from reanalysis.report.blocks import Document
 from reanalysis.report.context import Context

@@ -8,7 +8,6 @@ import numpy as np
 
 from reanalysis.bayesian.result import PosteriorFit
 from reanalysis.comparison.result import Compared
-from reanalysis.effects.posterior import effect_draws
 from reanalysis.effects.result import FrequentistAnswer, PosteriorAnswer
 from reanalysis.report import numbers
 from reanalysis.report.blocks import Figure
@@ -43,7 +42,7 @@ def posterior_density(context: Context, compared: Compared, fit: PosteriorFit) -
     if not isinstance(answer, PosteriorAnswer):
         return None
     posterior = density.PosteriorOfQuestion(
-        effect_draws(question, fit), _prior_of(compared, fit), answer, fit.level
+        fit.draws.coefficients[..., question.column], _prior_of(compared, fit), answer, fit.level
     )
     data = density.density_data(question, posterior, compared.frequentist, _axis(context, compared))
     probability = answer.direction if answer.beyond is None else answer.beyond

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 
-from reanalysis.bayesian.check import FAILED, SOUND
+from reanalysis.bayesian.limits import FAILED, SOUND
 from reanalysis.bayesian.result import Marginal, NoPosterior, PosteriorResult
 from reanalysis.comparison.result import Compared
 from reanalysis.effects.result import FrequentistAnswer, PosteriorAnswer, TailProbability

@@ -11,12 +11,9 @@ import numpy as np
 from arviz_stats.base import array_stats
 from numpy.typing import NDArray
 
-from reanalysis.sensitivity.result import PowerScaling
+from reanalysis.sensitivity.result import POWER_SCALING_THRESHOLD, PowerScaling
 
 FloatArray = NDArray[np.float64]
-
-THRESHOLD = 0.05
-"""Sensitivity from which the paper flags a quantity."""
 
 ALPHAS = (0.99, 1.01)
 
@@ -38,9 +35,9 @@ def power_scaling(draws: FloatArray, log_prior: FloatArray, log_likelihood: Floa
     """
     prior = _sensitivity(draws, log_prior)
     likelihood = _sensitivity(draws, log_likelihood)
-    if prior < THRESHOLD:
+    if prior < POWER_SCALING_THRESHOLD:
         return PowerScaling(prior, likelihood, "none")
-    both = likelihood >= THRESHOLD
+    both = likelihood >= POWER_SCALING_THRESHOLD
     return PowerScaling(prior, likelihood, "prior and data both matter" if both else "prior dominates")
 
 

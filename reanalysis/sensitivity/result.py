@@ -5,6 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import Literal
 
+POWER_SCALING_THRESHOLD = 0.05
+"""Sensitivity from which a quantity is flagged (Kallioinen et al. 2024)."""
+
 
 @dataclass(frozen=True, slots=True)
 class SweepPoint:
@@ -56,8 +59,14 @@ class TippingPrior:
 
 @dataclass(frozen=True, slots=True)
 class NoTipping:
-    """No single tipping prior: over the sweep the claim is ``always`` or ``never`` supported, or it
-    changes ``several`` times.
+    """No single tipping prior.
+
+    Attributes
+    ----------
+    claim : str
+        ``direction`` or ``beyond``.
+    reached : str
+        Over the sweep the claim is ``always`` or ``never`` supported, or changes ``several`` times.
     """
 
     claim: Literal["direction", "beyond"]

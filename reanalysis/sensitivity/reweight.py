@@ -31,6 +31,10 @@ class Weights:
     pareto_k: float
 
 
+ROUNDING = 1e-9
+"""Log ratios that differ by less are equal but for rounding."""
+
+
 def pareto_k_limit(draws: int) -> float:
     """Largest Pareto k at which weighted means of `draws` draws can be trusted: min(1 - 1/log10 S, 0.7)."""
     return float(min(1.0 - 1.0 / np.log10(draws), 0.7))
@@ -38,7 +42,7 @@ def pareto_k_limit(draws: int) -> float:
 
 def smooth_weights(log_ratio: FloatArray) -> Weights:
     """Pareto-smooth the importance weights of independent log ratios, shape (s,)."""
-    if not np.ptp(log_ratio) > 0.0:
+    if not np.ptp(log_ratio) > ROUNDING:  # the same prior: nothing to smooth
         return Weights(np.full(log_ratio.shape, 1.0 / log_ratio.size), -np.inf)
     # ArviZ takes the log likelihood of a left-out observation, which is minus the log ratio.
     log_weights, pareto_k = array_stats.psislw(-log_ratio)

@@ -46,6 +46,9 @@ WIDTHS = 33
 NARROWEST, WIDEST = 0.1, 20.0
 """In posterior standard deviations: from "hardly anything may happen" to "anything may"."""
 
+EFFECTIVE = 400.0
+"""Effective draws that re-weighting must leave: a probability is then known to about 0.025."""
+
 
 @dataclass(frozen=True, slots=True)
 class _Base:
@@ -87,7 +90,7 @@ def sweep_question(
     refits = 0
     for width in reversed(choose_widths(question, main)):
         weights, base = _best_weights(bases, width)
-        if weights.pareto_k > pareto_k_limit(base.effect.size):
+        if not _trustworthy(weights):
             fit = refit(_at_width(main.prior_set, question, width))
             refits += 1
             if isinstance(fit, NoPosterior):
@@ -106,6 +109,12 @@ def sweep_question(
             None if question.matters_beyond is None else find_tipping("beyond", points, question.act_when)
         ),
         refits=refits,
+    )
+
+
+def _trustworthy(weights: Weights) -> bool:
+    return weights.pareto_k <= pareto_k_limit(weights.values.size) and (
+        1.0 / float(np.sum(weights.values**2)) >= EFFECTIVE
     )
 
 

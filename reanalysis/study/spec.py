@@ -83,7 +83,7 @@ class ComputationSpec(_Section):
     """`[computation]`: the sampler's settings."""
 
     seed: Annotated[int, Field(ge=0, le=2**31 - 1)] | None = None
-    draws: Annotated[int, Field(ge=250, le=50_000)] = 1000
+    draws: Annotated[int, Field(ge=250, le=50_000)] = 2000
     tune: Annotated[int, Field(ge=200, le=50_000)] = 500
     chains: Annotated[int, Field(ge=2, le=16)] = 4
     target_accept: Annotated[float, Field(ge=0.6, le=0.999)] = 0.9

@@ -6,8 +6,7 @@ from reanalysis.comparison.result import Compared
 from reanalysis.report import numbers, pictures, tables
 from reanalysis.report.blocks import Aside, Block, Paragraph, Section, Subheading
 from reanalysis.report.context import Context
-from reanalysis.sensitivity.power_scaling import THRESHOLD
-from reanalysis.sensitivity.result import NoSweep
+from reanalysis.sensitivity.result import POWER_SCALING_THRESHOLD, NoSweep
 
 
 def prior_section(context: Context) -> Section | None:
@@ -62,5 +61,5 @@ def _power_scaling(compared: Compared) -> str:
     }[scaling.diagnosis]
     return (
         f"Power-scaling sensitivity (Kallioinen et al. 2024): prior {numbers.estimate(scaling.prior, 3)}, likelihood "
-        f"{numbers.estimate(scaling.likelihood, 3)}. From {numbers.given(THRESHOLD)} up a part counts as sensitive: {words}."
+        f"{numbers.estimate(scaling.likelihood, 3)}. From {numbers.given(POWER_SCALING_THRESHOLD)} up a part counts as sensitive: {words}."
     )

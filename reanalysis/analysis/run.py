@@ -4,22 +4,18 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from reanalysis.analysis.prepare import Prepared, prepare
+from reanalysis.analysis.result import Analysis
 from reanalysis.bayesian.densities import is_proper
 from reanalysis.bayesian.fit import fit_posterior
 from reanalysis.bayesian.log_density import log_likelihood, log_prior
 from reanalysis.bayesian.model import ModelStore
-from reanalysis.bayesian.priors import resolve_prior_sets
 from reanalysis.bayesian.result import NoPosterior, PosteriorFit, PosteriorResult, PriorSet
-from reanalysis.bayesian.sampler import SamplerSettings
+from reanalysis.bayesian.settings import SamplerSettings
 from reanalysis.comparison.compare import compare
-from reanalysis.comparison.result import Compared, Status
+from reanalysis.comparison.result import Compared
 from reanalysis.comparison.status import judge
-from reanalysis.data.dataset import Dataset
-from reanalysis.data.load import load_dataset
-from reanalysis.design.build import build_design, columns_used
 from reanalysis.design.model import Design
-from reanalysis.design.outlook import Finding, outlook
-from reanalysis.effects.ask import resolve_questions
 from reanalysis.effects.frequentist import answer_frequentist
 from reanalysis.effects.posterior import answer_posterior, effect_draws
 from reanalysis.effects.result import Question
@@ -29,105 +25,7 @@ from reanalysis.progress import StageClock, Stages
 from reanalysis.sensitivity.power_scaling import power_scaling
 from reanalysis.sensitivity.result import PowerScaling
 from reanalysis.sensitivity.sweep import sweep_question
-from reanalysis.study.formula import check_formula
 from reanalysis.study.spec import Study
-
-
-@dataclass(frozen=True, slots=True)
-class Source:
-    """The data file as it was read.
-
-    Attributes
-    ----------
-    name, sha256 : str
-    size : int
-        Bytes.
-    notes : tuple of str
-    """
-
-    name: str
-    sha256: str
-    size: int
-    notes: tuple[str, ...]
-
-
-@dataclass(frozen=True, slots=True)
-class Prepared:
-    """A study with everything that can be known before fitting.
-
-    Attributes
-    ----------
-    study : Study
-    source : Source
-    design : Design
-    prior_sets : tuple of PriorSet
-    questions : tuple of Question
-    findings : tuple of Finding
-    """
-
-    study: Study
-    source: Source
-    design: Design
-    prior_sets: tuple[PriorSet, ...]
-    questions: tuple[Question, ...]
-    findings: tuple[Finding, ...]
-
-
-@dataclass(frozen=True, slots=True)
-class Analysis:
-    """All results of one study.
-
-    Attributes
-    ----------
-    prepared : Prepared
-    settings : SamplerSettings
-        With the seed that was used.
-    frequentist : FrequentistFit
-    posteriors : tuple of PosteriorFit or NoPosterior
-        One for each prior set, in their order.
-    questions : tuple of Compared
-    status : Status
-    """
-
-    prepared: Prepared
-    settings: SamplerSettings
-    frequentist: FrequentistFit
-    posteriors: tuple[PosteriorResult, ...]
-    questions: tuple[Compared, ...]
-    status: Status
-
-    @property
-    def main(self) -> PosteriorResult:
-        """The posterior under the main prior set."""
-        return self.posterior(self.prepared.study.spec.model.main_prior)
-
-    def posterior(self, prior_set: str) -> PosteriorResult:
-        """The posterior under one prior set (KeyError when there is no such set)."""
-        for result in self.posteriors:
-            if result.prior_set.name == prior_set:
-                return result
-        raise KeyError(prior_set)
-
-
-def prepare(study: Study) -> Prepared:
-    """Read the data, build the design and resolve priors and questions; fits nothing.
-
-    Raises
-    ------
-    ReanalysisError
-        With every problem that the stage found.
-    """
-    parts = check_formula(study.spec.model.formula)
-    dataset = load_dataset(study, columns=frozenset(columns_used(study.spec, parts)))
-    design = build_design(study.spec, dataset)
-    return Prepared(
-        study=study,
-        source=_source(study, dataset),
-        design=design,
-        prior_sets=resolve_prior_sets(study.spec, design),
-        questions=resolve_questions(study.spec.question, design),
-        findings=outlook(design),
-    )
 
 
 def analyse(
@@ -244,7 +142,3 @@ def _power_scaling(question: Question, main: PosteriorResult, design: Design) ->
         log_prior(main.draws, main.prior_set, design),
         log_likelihood(main.draws, design),
     )
-
-
-def _source(study: Study, dataset: Dataset) -> Source:
-    return Source(study.data_path.name, dataset.sha256, dataset.size, dataset.notes)
