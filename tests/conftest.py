@@ -3,7 +3,9 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Generator
+from collections.abc import Callable, Generator
+from pathlib import Path
+from typing import Any
 
 import pytest
 from hypothesis import HealthCheck, settings
@@ -40,3 +42,64 @@ def pytest_runtest_makereport() -> Generator[None, pytest.TestReport, pytest.Tes
 def pytest_make_collect_report() -> Generator[None, pytest.CollectReport, pytest.CollectReport]:
     """Judge each module's report: a whole module can skip itself while it is imported."""
     return _refuse((yield))
+
+
+# The fixtures below import what they need when they are used: most tests need none of it, and it takes seconds.
+
+
+@pytest.fixture(scope="session")
+def store() -> Any:
+    """Compiled models, shared by all tests: each structure is compiled once in a session."""
+    from reanalysis.bayesian.model import ModelStore
+
+    return ModelStore()
+
+
+@pytest.fixture(scope="session")
+def sampler() -> Any:
+    """Settings of the sampler, as a study has them unless it says otherwise."""
+    from reanalysis.bayesian.settings import SamplerSettings
+
+    return SamplerSettings(
+        seed=20261104, draws=2000, tune=500, chains=4, target_accept=0.9, low_rank=False, cores=2
+    )
+
+
+@pytest.fixture(scope="session")
+def posterior_of(store: Any, sampler: Any) -> Callable[..., Any]:
+    """Give a function that samples the posterior of a design under a prior set, at level 0.95."""
+    from reanalysis.bayesian.fit import fit_posterior
+
+    return lambda design, prior_set: fit_posterior(design, prior_set, sampler, 0.95, store)
+
+
+@pytest.fixture(scope="session")
+def modelled() -> Callable[..., Any]:
+    """Give a function that builds the design of a frame, a formula, a family and further model keys."""
+    import pandas as pd
+
+    from reanalysis.data.dataset import Dataset
+    from reanalysis.design.build import build_design
+    from reanalysis.study.spec import StudySpec
+
+    def as_data(column: pd.Series) -> pd.Series | pd.Categorical:
+        if isinstance(column.dtype, pd.CategoricalDtype):
+            return column
+        return pd.Categorical(column, ordered=True) if pd.api.types.is_string_dtype(column) else column * 1.0
+
+    def make(frame: pd.DataFrame, formula: str, family: str = "gaussian", **keys: Any) -> Any:
+        model = {"formula": formula, "family": family, **keys}
+        spec = StudySpec.model_validate({"title": "A test", "data": {"file": "x.csv"}, "model": model})
+        columns = {name: as_data(column) for name, column in frame.items()}
+        return build_design(spec, Dataset(pd.DataFrame(columns), sha256="", size=1, notes=()))
+
+    return make
+
+
+@pytest.fixture(scope="session")
+def table_of() -> Callable[[str], Any]:
+    """Give a function that reads a published data set by its name."""
+    import pandas as pd
+
+    folder = Path(__file__).parent / "reference"
+    return lambda name: pd.read_csv(folder / f"{name}.csv", comment="#")

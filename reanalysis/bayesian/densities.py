@@ -12,7 +12,7 @@ from typing import Protocol
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy import stats
+from scipy import special, stats
 
 from reanalysis.study.distributions import (
     Cauchy,
@@ -35,6 +35,9 @@ from reanalysis.study.distributions import (
 )
 
 FloatArray = NDArray[np.float64]
+
+LOG_TWO = float(np.log(2.0))
+HALF_LOG_TWO_PI = 0.5 * float(np.log(2.0 * np.pi))
 
 
 class Frozen(Protocol):
@@ -152,16 +155,55 @@ def log_density(distribution: Distribution, x: FloatArray) -> FloatArray:
         Minus infinity outside the support. Improper distributions: 0 for the flat ones and
         -log(x) for ``log_flat``, their constants being arbitrary.
     """
-    if isinstance(distribution, Flat):
-        return np.zeros_like(x)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        if isinstance(distribution, HalfFlat):
-            return np.where(x > 0.0, 0.0, -np.inf)
-        if isinstance(distribution, LogFlat):
-            return np.where(x > 0.0, -np.log(np.abs(x)), -np.inf)
-        if isinstance(distribution, HalfStudentT):
-            return np.where(x >= 0.0, np.log(2.0) + frozen(distribution).logpdf(x), -np.inf)
-        return np.asarray(frozen(distribution).logpdf(x), dtype=np.float64)
+    if isinstance(distribution, RealDistribution):
+        return _real_log_density(distribution, x)
+    if isinstance(distribution, Uniform):
+        inside = (x >= distribution.low) & (x <= distribution.high)
+        return np.where(inside, -np.log(distribution.high - distribution.low), -np.inf)
+    inside = x > 0.0
+    return np.where(inside, _positive_log_density(distribution, np.where(inside, x, 1.0)), -np.inf)
+
+
+def _real_log_density(distribution: RealDistribution, x: FloatArray) -> FloatArray:
+    match distribution:
+        case Flat():
+            return np.zeros_like(x)
+        case Normal(mean=mean, sd=sd):
+            return -0.5 * ((x - mean) / sd) ** 2 - np.log(sd) - HALF_LOG_TWO_PI
+        case Laplace(location=location, scale=scale):
+            return -np.abs(x - location) / scale - np.log(2.0 * scale)
+        case Cauchy(location=location, scale=scale):
+            return _student_t(x, 1.0, location, scale)
+        case StudentT(df=df, location=location, scale=scale):
+            return _student_t(x, df, location, scale)
+
+
+def _positive_log_density(distribution: PositiveDistribution, x: FloatArray) -> FloatArray:
+    match distribution:
+        case HalfFlat():
+            return np.zeros_like(x)
+        case LogFlat():
+            return -np.log(x)
+        case HalfNormal(sd=sd):
+            return LOG_TWO - 0.5 * (x / sd) ** 2 - np.log(sd) - HALF_LOG_TWO_PI
+        case HalfCauchy(scale=scale):
+            return LOG_TWO + _student_t(x, 1.0, 0.0, scale)
+        case HalfStudentT(df=df, scale=scale):
+            return LOG_TWO + _student_t(x, df, 0.0, scale)
+        case LogNormal(meanlog=meanlog, sdlog=sdlog):
+            z = (np.log(x) - meanlog) / sdlog
+            return -0.5 * z**2 - np.log(sdlog) - HALF_LOG_TWO_PI - np.log(x)
+        case Gamma(shape=shape, rate=rate):
+            constant = shape * np.log(rate) - special.gammaln(shape)
+            return constant + (shape - 1.0) * np.log(x) - rate * x
+        case Exponential(rate=rate):
+            return np.log(rate) - rate * x
+
+
+def _student_t(x: FloatArray, df: float, location: float, scale: float) -> FloatArray:
+    constant = special.gammaln((df + 1.0) / 2.0) - special.gammaln(df / 2.0) - 0.5 * np.log(df * np.pi)
+    tails = 0.5 * (df + 1.0) * np.log1p(((x - location) / scale) ** 2 / df)
+    return np.asarray(constant - np.log(scale) - tails)
 
 
 @singledispatch

@@ -43,13 +43,13 @@ def warm_up() -> None:
 
 def render(analysis: Analysis, formats: tuple[str, ...]) -> Rendered:
     """Render an analysis as ``html`` and ``pdf``, as far as they are among `formats`."""
+    wanted = [name for name in ("html", "pdf") if name in formats]
+    if not wanted:
+        return {}
     from reanalysis.report.document import build_document
     from reanalysis.report.html import render_html
     from reanalysis.report.pdf import pdf_from_html
 
-    wanted = [name for name in ("html", "pdf") if name in formats]
-    if not wanted:
-        return {}
     document = build_document(analysis)
     page = render_html(document)
     rendered = {"html": page.encode()}
