@@ -8,7 +8,7 @@ do not depend on which parameterisation the sampler used.
 from __future__ import annotations
 
 from functools import singledispatch
-from typing import Protocol
+from typing import Any, Protocol
 
 import numpy as np
 from numpy.typing import NDArray
@@ -156,7 +156,7 @@ def log_density(distribution: Distribution, x: FloatArray) -> FloatArray:
         -log(x) for ``log_flat``, their constants being arbitrary.
     """
     if isinstance(distribution, RealDistribution):
-        return _real_log_density(distribution, x)
+        return np.asarray(_real_log_density(distribution, x))
     if isinstance(distribution, Uniform):
         inside = (x >= distribution.low) & (x <= distribution.high)
         return np.where(inside, -np.log(distribution.high - distribution.low), -np.inf)
@@ -164,7 +164,7 @@ def log_density(distribution: Distribution, x: FloatArray) -> FloatArray:
     return np.where(inside, _positive_log_density(distribution, np.where(inside, x, 1.0)), -np.inf)
 
 
-def _real_log_density(distribution: RealDistribution, x: FloatArray) -> FloatArray:
+def _real_log_density(distribution: RealDistribution, x: FloatArray) -> Any:
     match distribution:
         case Flat():
             return np.zeros_like(x)
@@ -178,7 +178,7 @@ def _real_log_density(distribution: RealDistribution, x: FloatArray) -> FloatArr
             return _student_t(x, df, location, scale)
 
 
-def _positive_log_density(distribution: PositiveDistribution, x: FloatArray) -> FloatArray:
+def _positive_log_density(distribution: PositiveDistribution, x: FloatArray) -> Any:
     match distribution:
         case HalfFlat():
             return np.zeros_like(x)
