@@ -44,7 +44,8 @@ def describe_prepared(prepared: Prepared) -> Iterator[str]:
 
 def _rows(prepared: Prepared) -> Iterator[str]:
     rows = prepared.design.rows
-    yield f"  rows      {numbers.count(rows.used)} used of {numbers.count(rows.read)} in {prepared.source.name}"
+    used, read = numbers.count(rows.used), numbers.count(rows.read)
+    yield f"  rows      {used} used of {read} in {prepared.source.name}"
     for name, number in rows.dropped_by:
         yield f"            {numbers.count(number)} without {name}"
     for note in prepared.source.notes:
@@ -89,7 +90,8 @@ def _priors(prepared: Prepared) -> Iterator[str]:
             words = describe(prior.distribution, units.get(prior.name, ""))
             yield f"            {prior.name:<{width}}  {words} [{prior.origin}]"
         if prepared.design.has_intercept:
-            yield f"            the intercept's prior is about the outcome at {_place(prior_set.intercept_at)}"
+            place = _place(prior_set.intercept_at)
+            yield f"            the intercept's prior is about the outcome at {place}"
 
 
 def _questions(prepared: Prepared) -> Iterator[str]:

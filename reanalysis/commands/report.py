@@ -100,12 +100,14 @@ def _analyse_all(
     with loading.stage("loading libraries"):
         from reanalysis.analysis.run import analyse
         from reanalysis.bayesian.model import ModelStore
+        from reanalysis.report.write import check_place
     store = ModelStore()
     results: list[_Analysed | _Outcome] = []
     for study in studies:
         clock = TerminalClock()
         clock.heading(study.path.name)
         try:
+            check_place(options.out / study.name)
             analysis = analyse(study, store=store, cores=options.cores, stages=clock)
         except ReanalysisError as error:
             results.append(_invalid(study.name, study.path.name, error))
@@ -116,12 +118,13 @@ def _analyse_all(
 
 
 def _write(analysed: _Analysed, options: ReportOptions) -> _Outcome:
+    from reanalysis.report.renderer import collect
     from reanalysis.report.write import write_report
 
     study, clock = analysed.study, analysed.clock
     try:
         with clock.stage("pictures and pages"):
-            rendered = {} if analysed.pages is None else analysed.pages.result()
+            rendered = {} if analysed.pages is None else collect(analysed.pages)
         folder = write_report(
             analysed.analysis, options.out, formats=options.formats, seconds=clock.seconds, rendered=rendered
         )

@@ -148,7 +148,7 @@ def rank_picture(context: Context, fit: PosteriorFit) -> Figure:
     )
     caption = (
         f"How the ranks of each chain's draws differ from those of all chains ({fit.prior_set.name} priors). "
-        "Chains that explore the same posterior stay between the dashed lines."
+        "Chains that explore the same posterior stay inside the band."
     )
     return Figure(context.numbering.figure(), caption, caption, ranks.draw_ranks(data))
 
@@ -210,9 +210,9 @@ def _spread_of_medians(medians: Sequence[float], decimals: int, unit: str) -> st
         return "Only one prior set gave a posterior."
     low, high = min(medians), max(medians)
     if numbers.estimate(low, decimals) == numbers.estimate(high, decimals):
-        return "The posterior median is the same under all of them."
+        return "To the digits printed, the posterior median is the same under all of them."
     limits = numbers.quantity(numbers.interval(low, high, decimals), unit)
-    return f"The posterior median goes from {limits}."
+    return f"The posterior median moves between them, {limits}."
 
 
 def _tipping(compared: Compared, tipping: TippingResult) -> str:
@@ -224,7 +224,7 @@ def _tipping(compared: Compared, tipping: TippingResult) -> str:
         claim = f"The probability that it exceeds {limit_words(question)}"
     needed = numbers.given(question.act_when)
     if isinstance(tipping, TippingPrior):
-        width = numbers.quantity(numbers.given(float(f"{tipping.width:.2g}")), question.unit)
+        width = numbers.quantity(numbers.given(float(f"{tipping.width:.3g}")), question.unit)
         return f"{claim} reaches {needed} only with a prior {tipping.reached_when} than SD {width}."
     return {
         "always": f"{claim} stays at or above {needed} at every width.",

@@ -6,12 +6,17 @@ never give back; the analysis needs others. Side by side, neither waits.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+import signal
+import threading
+from collections.abc import Iterator, Sequence
 from concurrent.futures import Future, ProcessPoolExecutor
+from concurrent.futures.process import BrokenProcessPool
+from contextlib import contextmanager
 from multiprocessing import get_context
 from types import TracebackType
 
 from reanalysis.analysis.result import Analysis
+from reanalysis.errors import Problem, ReportError
 
 Rendered = dict[str, bytes]
 
@@ -21,7 +26,8 @@ class Renderer:
 
     def __init__(self) -> None:
         self._pool = ProcessPoolExecutor(max_workers=1, mp_context=get_context("spawn"))
-        self._pool.submit(warm_up)
+        with _deaf_to_interrupts():
+            self._pool.submit(warm_up)
 
     def __enter__(self) -> Renderer:
         return self
@@ -36,9 +42,43 @@ class Renderer:
         return self._pool.submit(render, analysis, tuple(formats))
 
 
+def collect(pages: Future[Rendered]) -> Rendered:
+    """Wait for the rendered files.
+
+    Raises
+    ------
+    ReportError
+        When the rendering process is gone.
+    """
+    try:
+        return pages.result()
+    except BrokenProcessPool as error:
+        raise ReportError(
+            Problem(
+                where="report.html and report.pdf",
+                found="the process that lays out the pages was killed, probably for want of memory",
+                allowed="",
+                advice="free some memory, report fewer studies at once, or ask for --formats json,csv",
+            )
+        ) from error
+
+
+@contextmanager
+def _deaf_to_interrupts() -> Iterator[None]:
+    """Start a process in here that ignores Ctrl-C: a terminal sends it to all, and one has to answer."""
+    if threading.current_thread() is not threading.main_thread():
+        yield  # signals can be set in the main thread only
+        return
+    before = signal.signal(signal.SIGINT, signal.SIG_IGN)
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGINT, before)
+
+
 def warm_up() -> None:
     """Load what rendering needs."""
-    from reanalysis.report import document, html, pdf  # noqa: F401, PLC0415
+    from reanalysis.report import document, html, pdf  # noqa: F401
 
 
 def render(analysis: Analysis, formats: tuple[str, ...]) -> Rendered:

@@ -121,7 +121,7 @@ def bayesian_reading(compared: Compared) -> RichText:
         return f"No posterior: {answer.reason}."
     text = f"Probability {_of(answer.direction)} that the effect is {sign_words(question, answer)}"
     if answer.beyond is not None:
-        text += f", and {_of(answer.beyond)} that it {_exceeds(question)}"
+        text += f", and {_of(answer.beyond)} that it {exceeds_words(question)}"
     reached = isinstance(compared.main.conclusion, Conclusion) and compared.main.conclusion.act
     needed = numbers.given(question.act_when)
     return (
@@ -139,14 +139,20 @@ def prior_reading(compared: Compared) -> RichText:
     claim, deciding = _deciding(compared, given)
     low = min(deciding, key=lambda pair: pair[1].value)
     high = max(deciding, key=lambda pair: pair[1].value)
-    span = f"{_of(low[1])} ({low[0].prior_set}) to {_of(high[1])} ({high[0].prior_set})"
+    span = _span(low, high)
     if compared.dependence == "none":
         return (
             f"No: the conclusions are the same under all {numbers.count(len(given))} prior sets. "
-            f"The probability {claim} goes from {span}."
+            f"The probability {claim} {span}."
         )
     about = {"direction": "the direction", "size": "the size", "both": "direction and size"}
-    return f"Yes, for {about[compared.dependence]}: the probability {claim} goes from {span}."
+    return f"Yes, for {about[compared.dependence]}: the probability {claim} {span}."
+
+
+def _span(low: tuple[PriorReading, TailProbability], high: tuple[PriorReading, TailProbability]) -> str:
+    if _of(low[1]) == _of(high[1]):
+        return f"is {_of(low[1])} under each"
+    return f"goes from {_of(low[1])} ({low[0].prior_set}) to {_of(high[1])} ({high[0].prior_set})"
 
 
 def _deciding(
@@ -161,7 +167,7 @@ def _deciding(
             for reading, answer in pairs
             if isinstance(answer, PosteriorAnswer) and answer.beyond is not None
         ]
-        return f"that the effect {_exceeds(question)}", beyond
+        return f"that the effect {exceeds_words(question)}", beyond
     direction = [
         (reading, answer.direction) for reading, answer in pairs if isinstance(answer, PosteriorAnswer)
     ]
@@ -225,7 +231,8 @@ def sign_words(question: Question, answer: PosteriorAnswer) -> str:
     return "below zero" if below else "above zero"
 
 
-def _exceeds(question: Question) -> str:
+def exceeds_words(question: Question) -> str:
+    """Say that an effect is larger than what matters, in the asked direction."""
     limit = limit_words(question)
     match question.direction:
         case "greater":

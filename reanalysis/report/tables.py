@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from reanalysis.bayesian.limits import FAILED, SOUND
-from reanalysis.bayesian.result import Marginal, NoPosterior, PosteriorResult
+from reanalysis.bayesian.result import Marginal, NoPosterior, ParameterPrior, PosteriorResult, PriorSet
 from reanalysis.comparison.result import Compared
 from reanalysis.effects.result import FrequentistAnswer, PosteriorAnswer, TailProbability
 from reanalysis.frequentist.result import Estimate
@@ -13,6 +13,7 @@ from reanalysis.report import numbers
 from reanalysis.report.blocks import Cell, ColumnGroup, SpanningCell, Table, TableColumn, cap_rows
 from reanalysis.report.context import Context, decimals_of
 from reanalysis.report.priors_in_words import describe
+from reanalysis.study.distributions import Distribution
 
 CSV = "estimates.csv"
 
@@ -61,7 +62,7 @@ def tests_and_probabilities(context: Context) -> Table:
         ),
         columns=(
             TableColumn(""),
-            TableColumn("no effect", "frequentist", "right"),
+            TableColumn("zero", "frequentist", "right"),
             TableColumn("not in the direction", "frequentist", "right"),
             TableColumn("not beyond", "frequentist", "right"),
             TableColumn("not negligible", "frequentist", "right"),
@@ -75,7 +76,7 @@ def tests_and_probabilities(context: Context) -> Table:
         ),
         groups=(
             ColumnGroup("", "none", 1),
-            ColumnGroup("p, against the hypothesis of …", "frequentist", 4),
+            ColumnGroup("p, against the hypothesis that it is …", "frequentist", 4),
             ColumnGroup("posterior probability that it is …", "bayesian", 3),
         ),
         note=(
@@ -93,7 +94,7 @@ def prior_sets(context: Context, compared: Compared) -> Table:
     for reading in compared.readings:
         result = context.analysis.posterior(reading.prior_set)
         prior = result.prior_set.coefficients[compared.question.column]
-        head = (reading.prior_set, describe(prior.distribution, unit), prior.origin)
+        head = (reading.prior_set, describe(prior.distribution, unit), _short_origin(result.prior_set, prior))
         rows.append((*head, *_answer_cells(reading.answer, decimals)))
     return Table(
         number=context.numbering.table(),
@@ -109,6 +110,16 @@ def prior_sets(context: Context, compared: Compared) -> Table:
         ),
         rows=tuple(rows),
     )
+
+
+def _short_origin(prior_set: PriorSet, prior: ParameterPrior) -> str:
+    """Where a prior comes from, in few words; the last section gives it in full."""
+    if prior.origin.startswith("stated: "):
+        return prior.origin.removeprefix("stated: ")
+    if prior.origin.startswith(("scaled to the data", "SD 1")):
+        own = prior_set.name in ("flat", "weak", "sceptical")
+        return "the data’s spread" if own else "not stated; as weak"
+    return prior.origin
 
 
 def computation(context: Context) -> Table:
@@ -129,44 +140,19 @@ def computation(context: Context) -> Table:
         rows=tuple(_check_row(result) for result in context.analysis.posteriors),
         note=(
             f"Sound: R-hat at most {numbers.given(SOUND.rhat)}, both effective sample sizes (ESS) at least "
-            f"{numbers.count(SOUND.ess)}, no divergent transition, E-BFMI at least {numbers.given(SOUND.bfmi)}. "
-            f"Failed: R-hat above {numbers.given(FAILED.rhat)}, an ESS below {numbers.count(FAILED.ess)}, more than "
-            f"{numbers.percent(FAILED.divergent_share)} divergent, or E-BFMI below {numbers.given(FAILED.bfmi)}. "
+            f"{numbers.count(SOUND.ess)}, no divergent transition, E-BFMI at least "
+            f"{numbers.given(SOUND.bfmi)}. Failed: R-hat above {numbers.given(FAILED.rhat)}, an ESS below "
+            f"{numbers.count(FAILED.ess)}, more than {numbers.percent(FAILED.divergent_share)} divergent, "
+            f"or E-BFMI below {numbers.given(FAILED.bfmi)}. "
             "What is not sound is run again with more tuning and a higher target acceptance."
         ),
     )
 
 
-def goodness(context: Context) -> Table:
-    """Measures of the whole frequentist fit."""
-    measures = context.analysis.frequentist.goodness
-    pairs = [
-        ("rows", numbers.count(measures.n)),
-        ("residual degrees of freedom", numbers.count(measures.df_residual)),
-        ("log-likelihood", numbers.estimate(measures.loglik, 2)),
-        ("deviance (null model)", f"{_four(measures.deviance)} ({_four(measures.null_deviance)})"),
-        ("AIC", numbers.estimate(measures.aic, 2)),
-        ("Pearson chi-squared", _four(measures.pearson_chi2)),
-    ]
-    if measures.r_squared is not None:
-        pairs.append((f"R² ({measures.r_squared_kind})", numbers.estimate(measures.r_squared, 3)))
-        pairs.append(("residual standard deviation", _four(math.sqrt(measures.scale))))
-    return Table(
-        number=context.numbering.table(),
-        caption="The frequentist fit as a whole.",
-        columns=(TableColumn("measure"), TableColumn("value", "frequentist", "right")),
-        rows=tuple(pairs),
-    )
-
-
 def priors_in_full(context: Context) -> Table:
-    """Every prior of every parameter, with its origin."""
-    design = context.analysis.prepared.design
-    units = {column.name: column.unit for column in design.columns} | {"sigma": design.response.unit}
+    """Every prior of every parameter, with its origin; what is as in the weak set is said once."""
     rows = [
-        (prior_set.name, prior.name, describe(prior.distribution, units.get(prior.name, "")), prior.origin)
-        for prior_set in context.analysis.prepared.prior_sets
-        for prior in (*prior_set.coefficients, *prior_set.auxiliary)
+        row for prior_set in context.analysis.prepared.prior_sets for row in _prior_rows(context, prior_set)
     ]
     shown, hint = cap_rows(rows, "results.json")
     return Table(
@@ -179,9 +165,40 @@ def priors_in_full(context: Context) -> Table:
             TableColumn("origin"),
         ),
         rows=shown,
-        note="The intercept’s prior is about the outcome at the centre of the predictors unless said otherwise.",
+        note=_intercept_note(context),
         csv_hint=hint,
     )
+
+
+def _prior_rows(context: Context, prior_set: PriorSet) -> list[tuple[Cell, ...]]:
+    design = context.analysis.prepared.design
+    units = {column.name: column.unit for column in design.columns} | {"sigma": design.response.unit}
+    weak = {} if prior_set.name in ("weak", "flat") else _priors_of(context, "weak")
+    rows: list[tuple[Cell, ...]] = []
+    same = 0
+    for prior in (*prior_set.coefficients, *prior_set.auxiliary):
+        if weak.get(prior.name) == prior.distribution:
+            same += 1
+            continue
+        words = describe(prior.distribution, units.get(prior.name, ""))
+        rows.append((prior_set.name, prior.name, words, prior.origin))
+    if same:
+        rows.append((prior_set.name, "all others", SpanningCell("as in the weak prior set", 2)))
+    return rows
+
+
+def _priors_of(context: Context, name: str) -> dict[str, Distribution]:
+    prior_set = context.analysis.posterior(name).prior_set
+    return {prior.name: prior.distribution for prior in (*prior_set.coefficients, *prior_set.auxiliary)}
+
+
+def _intercept_note(context: Context) -> str:
+    sets = context.analysis.prepared.prior_sets
+    at_zero = [prior_set.name for prior_set in sets if prior_set.intercept_at == "zero"]
+    if not context.analysis.prepared.design.has_intercept:
+        return ""
+    note = "The intercept’s prior is about the outcome at the centre of the predictors"
+    return f"{note}, in {', '.join(at_zero)} at zero predictors." if at_zero else f"{note}."
 
 
 def _coefficient_row(context: Context, position: int) -> tuple[Cell, ...]:
@@ -301,7 +318,3 @@ def _check_row(result: PosteriorResult) -> tuple[Cell, ...]:
         numbers.estimate(check.min_bfmi, 2),
         numbers.count(check.attempts),
     )
-
-
-def _four(value: float) -> str:
-    return numbers.given(float(f"{value:.4g}"))

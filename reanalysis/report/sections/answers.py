@@ -41,11 +41,10 @@ def answers_section(context: Context) -> Section:
         blocks.append(Paragraph(study.context))
     blocks += [_answer(context, compared) for compared in context.analysis.questions]
     if not context.analysis.questions:
-        blocks.append(
-            Lead(
-                "The study file asks no question; the report sets both analyses of every coefficient side by side."
-            )
+        nothing = (
+            "The study file asks no question; the two analyses of every coefficient follow side by side."
         )
+        blocks.append(Lead(nothing))
     return Section("answer", "Answer", tuple(blocks))
 
 

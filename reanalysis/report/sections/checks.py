@@ -1,19 +1,20 @@
-"""Sections 7 and 8: does the model fit, and can the computation be trusted?"""
+"""Sections 7 and 8: whether the model fits, and whether the computation can be trusted."""
 
 from __future__ import annotations
 
-from reanalysis.report import pictures, tables
+import math
+
+from reanalysis.report import numbers, pictures, tables
 from reanalysis.report.blocks import Block, Definition, Definitions, Paragraph, Section, Subheading
 from reanalysis.report.context import Context
 
 
 def fit_section(context: Context) -> Section:
-    """Residuals, one posterior predictive check, measures of the whole fit."""
-    blocks: list[Block] = [pictures.residual_picture(context)]
+    """Measures of the whole fit, residuals, one posterior predictive check."""
+    blocks: list[Block] = [Definitions(_measures(context)), pictures.residual_picture(context)]
     fit = context.main_fit
     if fit is not None:
         blocks.append(pictures.predictive_picture(context, fit))
-    blocks.append(tables.goodness(context))
     return Section("fit", "Does the model fit?", tuple(blocks))
 
 
@@ -27,6 +28,48 @@ def computation_section(context: Context) -> Section:
     return Section("computation", "Can the computation be trusted?", tuple(blocks))
 
 
+def _measures(context: Context) -> tuple[Definition, ...]:
+    measures = context.analysis.frequentist.goodness
+    unit = context.analysis.prepared.design.response.unit
+    pairs = [
+        (
+            "rows",
+            (
+                f"{numbers.count(measures.n)}, with {numbers.count(measures.df_residual)} residual degrees of "
+                "freedom"
+            ),
+        ),
+        (
+            "deviance",
+            f"{_four(measures.deviance)}; {_four(measures.null_deviance)} with an intercept alone",
+        ),
+        (
+            "log-likelihood",
+            f"{numbers.estimate(measures.loglik, 2)}; AIC {numbers.estimate(measures.aic, 2)}",
+        ),
+    ]
+    if measures.r_squared is None:
+        ratio = measures.pearson_chi2 / measures.df_residual
+        pairs.append(
+            (
+                "dispersion",
+                (
+                    f"Pearson chi-squared {_four(measures.pearson_chi2)}, {numbers.estimate(ratio, 2)} per "
+                    "degree of freedom"
+                ),
+            )
+        )
+    else:
+        residual = numbers.quantity(_four(math.sqrt(measures.scale)), unit)
+        pairs.append(("R²", f"{numbers.estimate(measures.r_squared, 3)} ({measures.r_squared_kind})"))
+        pairs.append(("residual SD", residual))
+    return tuple(Definition(term, text) for term, text in pairs)
+
+
+def _four(value: float) -> str:
+    return numbers.given(float(f"{value:.4g}"))
+
+
 def _said(context: Context) -> list[Block]:
     findings = context.analysis.prepared.findings
     warnings = context.analysis.frequentist.warnings
@@ -34,8 +77,6 @@ def _said(context: Context) -> list[Block]:
     items += [Definition("frequentist fit", warning) for warning in dict.fromkeys(warnings)]
     heading = Subheading("What the design and the fits gave reason to say")
     if not items:
-        return [
-            heading,
-            Paragraph("Nothing: no dependent columns, no separation, no warning from either library."),
-        ]
+        nothing = "Nothing: no dependent columns, no separation, no warning from either library."
+        return [heading, Paragraph(nothing)]
     return [heading, Definitions(tuple(items))]

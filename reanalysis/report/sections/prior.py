@@ -1,12 +1,25 @@
-"""Section 4: does the prior matter?"""
+"""Section 4: whether the prior matters."""
 
 from __future__ import annotations
 
 from reanalysis.comparison.result import Compared
+from reanalysis.effects.result import PosteriorAnswer
 from reanalysis.report import numbers, pictures, tables
 from reanalysis.report.blocks import Aside, Block, Paragraph, Section, Subheading
 from reanalysis.report.context import Context
-from reanalysis.sensitivity.result import POWER_SCALING_THRESHOLD, NoSweep
+from reanalysis.report.sentences import exceeds_words, sign_words
+from reanalysis.sensitivity.result import (
+    POWER_SCALING_THRESHOLD,
+    NoSweep,
+    NoTipping,
+    PowerScaling,
+    Sweep,
+    TippingPrior,
+    TippingResult,
+)
+
+CENTRAL = 1.96
+"""Standard deviations either side of the centre that hold 95 % of a normal prior."""
 
 
 def prior_section(context: Context) -> Section | None:
@@ -26,40 +39,84 @@ def _question(context: Context, compared: Compared) -> list[Block]:
         tables.prior_sets(context, compared),
         pictures.prior_to_posterior(context, compared),
     ]
-    if isinstance(compared.sweep, NoSweep):
-        blocks.append(Paragraph(f"The prior’s width could not be varied: {compared.sweep.reason}."))
+    sweep = compared.sweep
+    if isinstance(sweep, NoSweep):
+        blocks.append(Paragraph(f"The prior’s width could not be varied: {sweep.reason}."))
     else:
-        blocks.append(pictures.width_sweep(context, compared, compared.sweep))
-        blocks.append(Aside("In words for a sceptic", _sceptic(compared)))
-    if compared.power_scaling is not None:
-        blocks.append(Paragraph(_power_scaling(compared)))
+        blocks.append(pictures.width_sweep(context, compared, sweep))
+        blocks.append(Aside("In words for a sceptic", sceptic_words(compared, sweep)))
+        blocks.append(Paragraph(_how_it_was_done(sweep, compared.power_scaling)))
     return blocks
 
 
-def _sceptic(compared: Compared) -> str:
-    if isinstance(compared.sweep, NoSweep):
-        return ""
-    refits = compared.sweep.refits
-    how = "by re-weighting the draws"
-    if refits:
-        how += f", with {numbers.count(refits)} fit{'s' if refits > 1 else ''} of {'their' if refits > 1 else 'its'} own"
+def sceptic_words(compared: Compared, sweep: Sweep) -> str:
+    """Say how sure of nothing somebody must have been beforehand to stay unconvinced."""
+    results = (sweep.direction_tipping, sweep.beyond_tipping)
+    return " ".join(_for_a_sceptic(compared, sweep, result) for result in results if result is not None)
+
+
+def _for_a_sceptic(compared: Compared, sweep: Sweep, tipping: TippingResult) -> str:
+    claim, needed = _claim(compared, tipping), numbers.given(compared.question.act_when)
+    if isinstance(tipping, NoTipping):
+        narrowest, widest = (_within(compared, sweep.points[end].width) for end in (0, -1))
+        return {
+            "always": (
+                f"Even somebody sure beforehand that the effect lies within {narrowest} of zero would, after "
+                f"these data, hold at least {needed} for {claim}."
+            ),
+            "never": (
+                f"However open somebody was beforehand (up to within {widest} of zero), these data leave "
+                f"{claim} below {needed}."
+            ),
+            "several": f"The probability of {claim} crosses {needed} more than once as the prior widens.",
+        }[tipping.reached]
+    within = _within(compared, tipping.width)
+    if tipping.reached_when == "narrower":
+        return (
+            f"Only somebody sure beforehand that the effect lies within {within} of zero would hold {needed} "
+            f"or more for {claim}."
+        )
     return (
-        f"{pictures.tipping_words(compared, compared.sweep)} Narrow means certain beforehand that hardly anything "
-        f"happens: with SD w, 95{numbers.THIN}% of the prior lies within 2 w of no effect. "
-        f"{numbers.count(len(compared.sweep.points))} widths were tried, {how}."
+        f"Only somebody sure beforehand that the effect lies within {within} of zero would, after these "
+        f"data, hold less than {needed} for {claim}."
     )
 
 
-def _power_scaling(compared: Compared) -> str:
-    scaling = compared.power_scaling
-    if scaling is None:
-        return ""
+def _within(compared: Compared, width: float) -> str:
+    reach = numbers.given(float(f"{CENTRAL * width:.2g}"))
+    return numbers.quantity(reach, compared.question.unit)
+
+
+def _claim(compared: Compared, tipping: TippingPrior | NoTipping) -> str:
+    main = compared.main.answer
+    if tipping.claim == "beyond":
+        return f"an effect that {exceeds_words(compared.question)}"
+    sign = sign_words(compared.question, main) if isinstance(main, PosteriorAnswer) else "in that direction"
+    return f"an effect {sign}"
+
+
+def _how_it_was_done(sweep: Sweep, scaling: PowerScaling | None) -> str:
+    count, refits = numbers.count(len(sweep.points)), sweep.refits
+    fits = "" if not refits else f"; {numbers.count(refits)} of them needed {_own_fits(refits)}"
+    text = (
+        f"“Sure” is read as a prior with 95{numbers.THIN}% of its probability there. The sweep re-weights "
+        f"the draws to {count} widths{fits}."
+    )
+    return text if scaling is None else f"{text} {_power_scaling(scaling)}"
+
+
+def _own_fits(refits: int) -> str:
+    return "a fit of its own" if refits == 1 else "fits of their own"
+
+
+def _power_scaling(scaling: PowerScaling) -> str:
     words = {
         "none": "the prior hardly moves this answer",
-        "prior and data both matter": "prior and data both matter; they may pull against each other",
+        "prior and data both matter": "prior and data both matter, and may pull against each other",
         "prior dominates": "the prior dominates a likelihood that says little",
     }[scaling.diagnosis]
     return (
-        f"Power-scaling sensitivity (Kallioinen et al. 2024): prior {numbers.estimate(scaling.prior, 3)}, likelihood "
-        f"{numbers.estimate(scaling.likelihood, 3)}. From {numbers.given(POWER_SCALING_THRESHOLD)} up a part counts as sensitive: {words}."
+        f"Power-scaling sensitivity (Kallioinen et al. 2024) is {numbers.estimate(scaling.prior, 3)} to the "
+        f"prior and {numbers.estimate(scaling.likelihood, 3)} to the likelihood; from "
+        f"{numbers.given(POWER_SCALING_THRESHOLD)} up an answer counts as sensitive: {words}."
     )

@@ -27,12 +27,10 @@ def side_by_side_section(context: Context) -> Section:
     """The table of both analyses, then the questions on one axis for each unit."""
     design, fit = context.analysis.prepared.design, context.analysis.frequentist
     method = "ordinary least squares" if fit.method == "OLS" else "maximum likelihood"
-    columns = numbers.count(len(design.columns))
+    rows, columns = numbers.count(design.rows.used), numbers.count(len(design.columns))
     lead = Lead(
         (
-            Text(
-                f"One model, fitted twice to the same {numbers.count(design.rows.used)} rows and the same {columns} columns: "
-            ),
+            Text(f"One model, fitted twice to the same {rows} rows and the same {columns} columns: "),
             Emphasis(design.formula),
             Text(
                 f", {likelihood_words(context)}. Left, {method}; right, the same likelihood with "

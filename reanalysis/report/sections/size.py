@@ -13,9 +13,9 @@ def size_section(context: Context) -> Section | None:
         return None
     blocks: list[Block] = [
         Paragraph(
-            "A p-value says how surprising the data would be if a claim were false; a posterior probability says "
-            "how credible the claim is, given data and prior. The table sets the two beside each other, claim "
-            "by claim."
+            "A p-value says how surprising the data would be if a claim were false; a posterior probability "
+            "says how credible the claim is, given data and prior. The table sets the two beside each other, "
+            "claim by claim."
         ),
         tables.tests_and_probabilities(context),
     ]
