@@ -75,9 +75,11 @@ def test_inflated_variance(design_of, frame):
 
 
 def test_large_mean_is_no_overlap(design_of, frame):
-    """A year is nearly proportional to the intercept, which is no reason to worry."""
-    frame["year"] = 2000.0 + np.arange(60) % 10
-    assert outlook(design_of(frame, "y ~ year + x")) == ()
+    """Numbers far from zero are nearly proportional to the intercept, which is no reason to worry."""
+    frame["year"], frame["height"] = 2000.0 + np.arange(60) % 10, 1000.0 + frame["z"]
+    assert outlook(design_of(frame, "y ~ year + height")) == ()
+    inflated = by_kind(design_of(frame, "y ~ 0 + year + height"))
+    assert set(inflated) == {"inflated variance"}
 
 
 @pytest.mark.parametrize(("event", "end"), [(1.0, "plus"), (0.0, "minus")])
