@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Callable, Generator
+from functools import cache
 from pathlib import Path
 from typing import Any
 
@@ -103,3 +104,13 @@ def table_of() -> Callable[[str], Any]:
 
     folder = Path(__file__).parent / "reference"
     return lambda name: pd.read_csv(folder / f"{name}.csv", comment="#")
+
+
+@pytest.fixture(scope="session")
+def analysed(store: Any) -> Callable[[str], Any]:
+    """Analyse a study, once a session, by its path from the root without the ending."""
+    from reanalysis.analysis.run import analyse
+    from reanalysis.study.read import load_study
+
+    root = Path(__file__).resolve().parents[1]
+    return cache(lambda study: analyse(load_study(root / f"{study}.toml"), store=store, cores=2))

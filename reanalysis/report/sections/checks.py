@@ -31,34 +31,17 @@ def computation_section(context: Context) -> Section:
 def _measures(context: Context) -> tuple[Definition, ...]:
     measures = context.analysis.frequentist.goodness
     unit = context.analysis.prepared.design.response.unit
+    rows, df = numbers.count(measures.n), numbers.count(measures.df_residual)
+    null, aic = _four(measures.null_deviance), numbers.estimate(measures.aic, 2)
     pairs = [
-        (
-            "rows",
-            (
-                f"{numbers.count(measures.n)}, with {numbers.count(measures.df_residual)} residual degrees of "
-                "freedom"
-            ),
-        ),
-        (
-            "deviance",
-            f"{_four(measures.deviance)}; {_four(measures.null_deviance)} with an intercept alone",
-        ),
-        (
-            "log-likelihood",
-            f"{numbers.estimate(measures.loglik, 2)}; AIC {numbers.estimate(measures.aic, 2)}",
-        ),
+        ("rows", f"{rows}, with {df} residual degrees of freedom"),
+        ("deviance", f"{_four(measures.deviance)}; {null} with an intercept alone"),
+        ("log-likelihood", f"{numbers.estimate(measures.loglik, 2)}; AIC {aic}"),
     ]
     if measures.r_squared is None:
-        ratio = measures.pearson_chi2 / measures.df_residual
-        pairs.append(
-            (
-                "dispersion",
-                (
-                    f"Pearson chi-squared {_four(measures.pearson_chi2)}, {numbers.estimate(ratio, 2)} per "
-                    "degree of freedom"
-                ),
-            )
-        )
+        ratio = numbers.estimate(measures.pearson_chi2 / measures.df_residual, 2)
+        chi2 = _four(measures.pearson_chi2)
+        pairs.append(("dispersion", f"Pearson chi-squared {chi2}, {ratio} per degree of freedom"))
     else:
         residual = numbers.quantity(_four(math.sqrt(measures.scale)), unit)
         pairs.append(("R²", f"{numbers.estimate(measures.r_squared, 3)} ({measures.r_squared_kind})"))
