@@ -174,12 +174,12 @@ def _weak_slope(column: Column, design: Design) -> ParameterPrior:
         if column.kind == "categorical":
             return ParameterPrior(column.name, Normal(sd=1.0), "SD 1 for a factor's column")
         return ParameterPrior(
-            column.name, Normal(sd=1.0 / column.sd), f"scaled to the data: 1 / sd({column.name})"
+            column.name, Normal(sd=1.0 / _spread(column)), f"scaled to the data: 1 / sd({column.name})"
         )
     outcome = f"2.5 sd({_outcome(design)})" if family.latent_sd is None else "2.5"
     return ParameterPrior(
         column.name,
-        Normal(sd=2.5 * _response_sd(design) / column.sd),
+        Normal(sd=2.5 * _response_sd(design) / _spread(column)),
         f"scaled to the data: {outcome} / sd({column.name})",
     )
 
@@ -204,7 +204,7 @@ def _doubt(column: Column, design: Design, question: QuestionSpec) -> ParameterP
         outcome = f"sd({_outcome(design)})" if latent is None else "the outcome's SD on the model's scale"
         return ParameterPrior(
             column.name,
-            Normal(sd=SCEPTICAL_FALLBACK * spread / column.sd),
+            Normal(sd=SCEPTICAL_FALLBACK * spread / _spread(column)),
             f"no smallest effect that matters was stated; used instead: "
             f"{SCEPTICAL_FALLBACK} {outcome} / sd({column.name})",
         )
@@ -219,6 +219,11 @@ def _doubt(column: Column, design: Design, question: QuestionSpec) -> ParameterP
 
 def _sd(prior: ParameterPrior) -> float:
     return prior.distribution.sd if isinstance(prior.distribution, Normal) else float("inf")
+
+
+def _spread(column: Column) -> float:
+    # A combination of levels that no row has gives a column of zeros; it counts as one of unit spread.
+    return column.sd if column.sd > 0.0 else 1.0
 
 
 def _response_sd(design: Design) -> float:

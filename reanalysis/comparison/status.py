@@ -63,6 +63,6 @@ def _of_frequentist(frequentist: FrequentistFit) -> list[Caveat]:
         caveats.append(
             Caveat("doubtful", f"No maximum-likelihood estimate exists for {names}: {missing[0].reason}.")
         )
-    if not frequentist.converged:
+    elif not frequentist.converged:
         caveats.append(Caveat("failed", "The frequentist fit did not converge."))
     return caveats

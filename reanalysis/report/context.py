@@ -9,7 +9,6 @@ import numpy as np
 
 from reanalysis.analysis.result import Analysis
 from reanalysis.bayesian.result import NoPosterior, PosteriorFit
-from reanalysis.comparison.result import Compared
 from reanalysis.effects.result import FrequentistAnswer, PosteriorAnswer, Question
 from reanalysis.report import numbers
 
@@ -67,23 +66,24 @@ class Context:
     def ratio(self, value: float) -> str:
         """The exponential of an effect with its name, ``odds ratio 0.48``; empty where it has none."""
         words = RATIOS.get(self.analysis.prepared.design.family.link, "")
-        return f"{words} {numbers.given(_three_digits(float(np.exp(value))))}" if words else ""
+        return f"{words} {numbers.ratio(float(np.exp(value)))}" if words else ""
 
     def ratio_interval(self, low: float, high: float) -> str:
         """Limits of an effect as ratios, ``0.18 to 1.03``; empty where there is no such ratio."""
         if self.analysis.prepared.design.family.link not in RATIOS:
             return ""
-        return " to ".join(numbers.given(_three_digits(float(np.exp(limit)))) for limit in (low, high))
+        return " to ".join(numbers.ratio(float(np.exp(limit))) for limit in (low, high))
 
 
-def decimals_of(compared: Compared) -> int:
-    """Decimals for all numbers of one question, so that both analyses print alike."""
-    main = compared.main.answer
-    mcses = (main.mcse_median, main.mcse_low, main.mcse_high) if isinstance(main, PosteriorAnswer) else ()
-    if isinstance(compared.frequentist, FrequentistAnswer):
-        return numbers.choose_decimals(compared.frequentist.se, *mcses)
-    spread = (main.high - main.low) / 4.0 if isinstance(main, PosteriorAnswer) else 0.0
-    return numbers.choose_decimals(spread, *mcses)
+def frequentist_decimals(answer: FrequentistAnswer) -> int:
+    """Decimals of a question's frequentist numbers: two significant digits of the standard error."""
+    return numbers.choose_decimals(answer.se)
+
+
+def posterior_decimals(answer: PosteriorAnswer) -> int:
+    """Decimals of a question's posterior numbers: as their spread asks and their Monte Carlo error allows."""
+    spread = (answer.high - answer.low) / 4.0
+    return numbers.choose_decimals(spread, answer.mcse_median, answer.mcse_low, answer.mcse_high)
 
 
 def limit_words(question: Question) -> str:
@@ -101,7 +101,3 @@ def change_words(value: float) -> str:
 def asked_words(question: Question) -> str:
     """What the question asks about: an increase, a decrease, a difference."""
     return {"greater": "an increase", "less": "a decrease", "either": "a difference"}[question.direction]
-
-
-def _three_digits(value: float) -> float:
-    return float(f"{value:.3g}")

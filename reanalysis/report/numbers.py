@@ -15,6 +15,7 @@ from decimal import Decimal
 THIN = "\u202f"
 """Narrow no-break space: between a sign and its number, in thousands, before a unit."""
 MINUS = "\u2212"
+NO_BREAK_HYPHEN = "\u2011"
 NONE = "\u2013"
 """Stands where there is no number."""
 
@@ -138,8 +139,15 @@ def count(value: float) -> str:
 
 
 def quantity(text: str, unit: str) -> str:
-    """Return a formatted number with its unit, if it has one: ``2 N``."""
-    return f"{text}{THIN}{unit}" if unit else text
+    """Return a formatted number with its unit, if it has one: ``2 N``; a hyphen in it breaks no line."""
+    return f"{text}{THIN}{unit.replace('-', NO_BREAK_HYPHEN)}" if unit else text
+
+
+def ratio(value: float) -> str:
+    """Return a ratio of odds, rates or hazards: ``0.43``, ``1.03``, ``12.3``, ``245``, ``0.0031``."""
+    if not math.isfinite(value) or value >= LARGE or value < 0.01:
+        return given(float(f"{value:.2g}")) if math.isfinite(value) else estimate(value, 0)
+    return estimate(value, 2 if value < 10.0 else 1 if value < 100.0 else 0)
 
 
 def rhat(value: float) -> str:

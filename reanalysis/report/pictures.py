@@ -11,7 +11,7 @@ from reanalysis.comparison.result import Compared
 from reanalysis.effects.result import FrequentistAnswer, PosteriorAnswer
 from reanalysis.report import numbers
 from reanalysis.report.blocks import Figure
-from reanalysis.report.context import Context, decimals_of, limit_words
+from reanalysis.report.context import Context, frequentist_decimals, limit_words, posterior_decimals
 from reanalysis.report.figures import density, paired, predictive, priors, ranks, residuals, sweep
 from reanalysis.report.sentences import sign_words
 from reanalysis.sensitivity.result import NoTipping, Sweep, TippingPrior, TippingResult
@@ -63,10 +63,9 @@ def prior_to_posterior(context: Context, compared: Compared) -> Figure:
     ]
     level = context.analysis.prepared.study.spec.model.level
     data = priors.priors_data(question, pairs, level, _axis(context, compared))
-    medians = [
-        reading.answer.median for reading in compared.readings if isinstance(reading.answer, PosteriorAnswer)
-    ]
-    decimals = decimals_of(compared)
+    given = [reading.answer for reading in compared.readings if isinstance(reading.answer, PosteriorAnswer)]
+    medians = [answer.median for answer in given]
+    decimals = min((posterior_decimals(answer) for answer in given), default=2)
     caption = (
         f"{question.name}: from each prior (dashed, {context.level}) to its posterior. "
         f"{_spread_of_medians(medians, decimals, question.unit)}"
@@ -167,16 +166,15 @@ def _axis(context: Context, compared: Compared) -> str:
 
 
 def _alt_of_pair(compared: Compared) -> str:
-    decimals = decimals_of(compared)
     parts = [f"{compared.question.name}:"]
     frequentist, main = compared.frequentist, compared.main.answer
     if isinstance(frequentist, FrequentistAnswer):
-        limits = numbers.interval(frequentist.low, frequentist.high, decimals)
+        limits = numbers.interval(frequentist.low, frequentist.high, frequentist_decimals(frequentist))
         parts.append(f"confidence interval {limits};")
     else:
         parts.append("no estimate exists;")
     if isinstance(main, PosteriorAnswer):
-        parts.append(f"credible interval {numbers.interval(main.low, main.high, decimals)};")
+        parts.append(f"credible interval {numbers.interval(main.low, main.high, posterior_decimals(main))};")
     limit = limit_words(compared.question)
     parts.append(
         f"effects up to {limit} are too small to matter." if limit else "no smallest effect was stated."

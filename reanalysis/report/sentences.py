@@ -13,7 +13,14 @@ from reanalysis.effects.result import (
 )
 from reanalysis.report import numbers
 from reanalysis.report.blocks import RichText, Strong, Text
-from reanalysis.report.context import Context, asked_words, change_words, decimals_of, limit_words
+from reanalysis.report.context import (
+    Context,
+    asked_words,
+    change_words,
+    frequentist_decimals,
+    limit_words,
+    posterior_decimals,
+)
 
 
 def headline(context: Context, compared: Compared) -> str:
@@ -25,12 +32,14 @@ def headline(context: Context, compared: Compared) -> str:
     if isinstance(frequentist, NoConclusion):
         return f"The data alone give no estimate; with the {main.prior_set} prior it is {size}."
     if compared.agreement == "agree":
-        return _agreed(compared.question, main.conclusion, size)
-    return _parted(compared.question, main.conclusion, frequentist)
+        sentence = _agreed(compared.question, main.conclusion, size)
+    else:
+        sentence = _parted(compared.question, main.conclusion, frequentist)
+    return sentence if compared.dependence == "none" else f"{sentence} The answer depends on the prior."
 
 
 def _about(context: Context, compared: Compared, answer: PosteriorAnswer) -> str:
-    text = numbers.estimate(abs(answer.median), decimals_of(compared))
+    text = numbers.estimate(abs(answer.median), posterior_decimals(answer))
     ratio = context.ratio(answer.median)
     words = f"{change_words(answer.median)} of about "
     words += numbers.quantity(text, compared.question.unit)
@@ -67,11 +76,11 @@ def _parted(question: Question, bayesian: Conclusion, frequentist: Conclusion) -
     else:
         claim = f"{asked_words(question)} of more than {limit_words(question)}"
         ours, theirs = bayesian.size or "open", frequentist.size or "open"
-    verbs = {"supported": "supports", "contradicted": "speaks against", "open": "leaves open"}
-    return (
-        f"The two analyses part: the Bayesian one {verbs[ours]} {claim}, the frequentist one "
-        f"{verbs[theirs]} it."
-    )
+    first = {"supported": f"supports {claim}", "contradicted": f"speaks against {claim}"}
+    then = {"supported": "supports it", "contradicted": "speaks against it", "open": "leaves it open"}
+    if ours == "open":
+        return f"The two analyses part: the frequentist one {first[theirs]}, the Bayesian one leaves it open."
+    return f"The two analyses part: the Bayesian one {first[ours]}, the frequentist one {then[theirs]}."
 
 
 def frequentist_reading(context: Context, compared: Compared) -> RichText:
@@ -80,7 +89,7 @@ def frequentist_reading(context: Context, compared: Compared) -> RichText:
     if isinstance(answer, NoFrequentistAnswer):
         return f"No estimate exists: {answer.reason}."
     unit = compared.question.unit
-    decimals = decimals_of(compared)
+    decimals = frequentist_decimals(answer)
     estimate = numbers.quantity(numbers.estimate(answer.estimate, decimals), unit)
     interval = numbers.quantity(numbers.interval(answer.low, answer.high, decimals), unit)
     text = (

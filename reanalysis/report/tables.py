@@ -7,11 +7,16 @@ import math
 from reanalysis.bayesian.limits import FAILED, SOUND
 from reanalysis.bayesian.result import Marginal, NoPosterior, ParameterPrior, PosteriorResult, PriorSet
 from reanalysis.comparison.result import Compared
-from reanalysis.effects.result import FrequentistAnswer, PosteriorAnswer, TailProbability
+from reanalysis.effects.result import (
+    FrequentistAnswer,
+    PosteriorAnswer,
+    PosteriorResultForQuestion,
+    TailProbability,
+)
 from reanalysis.frequentist.result import Estimate
 from reanalysis.report import numbers
 from reanalysis.report.blocks import Cell, ColumnGroup, SpanningCell, Table, TableColumn, cap_rows
-from reanalysis.report.context import Context, decimals_of
+from reanalysis.report.context import Context, limit_words, posterior_decimals
 from reanalysis.report.priors_in_words import describe
 from reanalysis.study.distributions import Distribution
 
@@ -89,13 +94,17 @@ def tests_and_probabilities(context: Context) -> Table:
 
 def prior_sets(context: Context, compared: Compared) -> Table:
     """One question under every prior set."""
-    decimals, unit = decimals_of(compared), compared.question.unit
+    unit = compared.question.unit
     rows = []
     for reading in compared.readings:
         result = context.analysis.posterior(reading.prior_set)
         prior = result.prior_set.coefficients[compared.question.column]
-        head = (reading.prior_set, describe(prior.distribution, unit), _short_origin(result.prior_set, prior))
-        rows.append((*head, *_answer_cells(reading.answer, decimals)))
+        head = (
+            reading.prior_set,
+            describe(prior.distribution, unit),
+            _short_origin(compared, result.prior_set, prior),
+        )
+        rows.append((*head, *_answer_cells(reading.answer)))
     return Table(
         number=context.numbering.table(),
         caption=f"{compared.question.name}, under each prior set{' (' + unit + ')' if unit else ''}.",
@@ -112,13 +121,15 @@ def prior_sets(context: Context, compared: Compared) -> Table:
     )
 
 
-def _short_origin(prior_set: PriorSet, prior: ParameterPrior) -> str:
+def _short_origin(compared: Compared, prior_set: PriorSet, prior: ParameterPrior) -> str:
     """Where a prior comes from, in few words; the last section gives it in full."""
     if prior.origin.startswith("stated: "):
         return prior.origin.removeprefix("stated: ")
     if prior.origin.startswith(("scaled to the data", "SD 1")):
         own = prior_set.name in ("flat", "weak", "sceptical")
         return "the data’s spread" if own else "not stated; as weak"
+    if prior.origin.startswith("5 %"):
+        return f"{numbers.percent(0.05)} beyond {limit_words(compared.question)}"
     return prior.origin
 
 
@@ -204,12 +215,9 @@ def _intercept_note(context: Context) -> str:
 def _coefficient_row(context: Context, position: int) -> tuple[Cell, ...]:
     column = context.analysis.prepared.design.columns[position]
     result = context.analysis.frequentist.coefficients[position]
-    fit = context.main_fit
-    marginal = None if fit is None else fit.coefficients[position]
-    spread = result.se if isinstance(result, Estimate) else (marginal.sd if marginal else 0.0)
-    decimals = _decimals(spread, marginal)
     head = (context.label(position), column.unit or numbers.NONE)
     if isinstance(result, Estimate):
+        decimals = numbers.choose_decimals(result.se)
         left: tuple[Cell, ...] = (
             numbers.estimate(result.estimate, decimals),
             numbers.interval(result.low, result.high, decimals),
@@ -217,35 +225,35 @@ def _coefficient_row(context: Context, position: int) -> tuple[Cell, ...]:
         )
     else:
         left = (SpanningCell(f"no estimate exists: {result.reason}", 3),)
-    return (*head, *left, *_marginal_cells(context, marginal, decimals))
+    fit = context.main_fit
+    return (*head, *left, *_marginal_cells(context, None if fit is None else fit.coefficients[position]))
 
 
 def _auxiliary_row(context: Context, position: int) -> tuple[Cell, ...]:
     design, fit = context.analysis.prepared.design, context.main_fit
-    marginal = None if fit is None else fit.auxiliary[position]
-    sigma = math.sqrt(context.analysis.frequentist.goodness.scale)
-    decimals = _decimals(marginal.sd if marginal else sigma / 10.0, marginal)
+    measures = context.analysis.frequentist.goodness
+    sigma = math.sqrt(measures.scale)
+    # The standard error of a residual standard deviation, near enough to choose its digits.
+    decimals = numbers.choose_decimals(sigma / math.sqrt(2.0 * max(measures.df_residual, 1.0)))
     head = ("Residual standard deviation", design.response.unit or numbers.NONE)
     left = (numbers.estimate(sigma, decimals), numbers.NONE, numbers.NONE)
-    return (*head, *left, *_marginal_cells(context, marginal, decimals)[:2], numbers.NONE)
+    cells = _marginal_cells(context, None if fit is None else fit.auxiliary[position])
+    return (*head, *left, *cells) if fit is None else (*head, *left, *cells[:2], numbers.NONE)
 
 
-def _marginal_cells(context: Context, marginal: Marginal | None, decimals: int) -> tuple[Cell, ...]:
+def _marginal_cells(context: Context, marginal: Marginal | None) -> tuple[Cell, ...]:
     if marginal is None:
         main = context.analysis.main
         reason = main.reason if isinstance(main, NoPosterior) else ""
         return (SpanningCell(f"no posterior: {reason}", 3),)
+    decimals = numbers.choose_decimals(
+        marginal.sd, marginal.mcse_median, marginal.mcse_low, marginal.mcse_high
+    )
     return (
         numbers.estimate(marginal.median, decimals),
         numbers.interval(marginal.low, marginal.high, decimals),
         numbers.probability(marginal.prob_positive, marginal.mcse_prob_positive),
     )
-
-
-def _decimals(spread: float, marginal: Marginal | None) -> int:
-    if marginal is None:
-        return numbers.choose_decimals(spread)
-    return numbers.choose_decimals(spread, marginal.mcse_median, marginal.mcse_low, marginal.mcse_high)
 
 
 def _auxiliaries(context: Context) -> int:
@@ -289,9 +297,10 @@ def _probability_cells(compared: Compared) -> tuple[Cell, ...]:
     return (_of(answer.direction), _of(answer.beyond), _of(answer.negligible))
 
 
-def _answer_cells(answer: object, decimals: int) -> tuple[Cell, ...]:
+def _answer_cells(answer: PosteriorResultForQuestion) -> tuple[Cell, ...]:
     if not isinstance(answer, PosteriorAnswer):
         return (SpanningCell("no posterior", 4),)
+    decimals = posterior_decimals(answer)
     return (
         numbers.estimate(answer.median, decimals),
         numbers.interval(answer.low, answer.high, decimals),

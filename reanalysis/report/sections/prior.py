@@ -61,24 +61,20 @@ def _for_a_sceptic(compared: Compared, sweep: Sweep, tipping: TippingResult) -> 
         narrowest, widest = (_within(compared, sweep.points[end].width) for end in (0, -1))
         return {
             "always": (
-                f"Even somebody sure beforehand that the effect lies within {narrowest} of zero would, after "
-                f"these data, hold at least {needed} for {claim}."
+                f"Even somebody sure beforehand that the effect lies within {narrowest} of zero would, "
+                f"after these data, give at least {needed} to the claim that it {claim}."
             ),
             "never": (
-                f"However open somebody was beforehand (up to within {widest} of zero), these data leave "
-                f"{claim} below {needed}."
+                f"No width of prior, up to {widest} either way, brings the probability that the effect "
+                f"{claim} to {needed}."
             ),
-            "several": f"The probability of {claim} crosses {needed} more than once as the prior widens.",
+            "several": f"The probability that the effect {claim} crosses {needed} more than once.",
         }[tipping.reached]
     within = _within(compared, tipping.width)
-    if tipping.reached_when == "narrower":
-        return (
-            f"Only somebody sure beforehand that the effect lies within {within} of zero would hold {needed} "
-            f"or more for {claim}."
-        )
+    verdict = f"less than {needed}" if tipping.reached_when == "wider" else f"{needed} or more"
     return (
         f"Only somebody sure beforehand that the effect lies within {within} of zero would, after these "
-        f"data, hold less than {needed} for {claim}."
+        f"data, give {verdict} to the claim that it {claim}."
     )
 
 
@@ -90,9 +86,9 @@ def _within(compared: Compared, width: float) -> str:
 def _claim(compared: Compared, tipping: TippingPrior | NoTipping) -> str:
     main = compared.main.answer
     if tipping.claim == "beyond":
-        return f"an effect that {exceeds_words(compared.question)}"
+        return exceeds_words(compared.question)
     sign = sign_words(compared.question, main) if isinstance(main, PosteriorAnswer) else "in that direction"
-    return f"an effect {sign}"
+    return f"is {sign}"
 
 
 def _how_it_was_done(sweep: Sweep, scaling: PowerScaling | None) -> str:
