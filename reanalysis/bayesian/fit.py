@@ -61,7 +61,8 @@ def fit_posterior(
     """
     scaling = choose_scaling(design, prior_set)
     inputs = bound_inputs(design, prior_set, scaling)
-    bound = store.get(structure_of(design, prior_set), inputs).bind(inputs)
+    structure = structure_of(design, prior_set)
+    bound = store.get(structure, inputs).bind(inputs)
     own = replace(settings, seed=derive_seed(settings.seed, prior_set.name))
     again = replace(
         own,
@@ -72,7 +73,7 @@ def fit_posterior(
     )
     result = None
     for attempt, run in enumerate((own, again), start=1):
-        raw = sample(bound, design.family.auxiliary, run)
+        raw = sample(bound, structure, run)
         if raw is None:
             continue
         result = _posterior(design, prior_set, scaling, raw, (level, attempt))
@@ -84,7 +85,8 @@ def fit_posterior(
 def structure_of(design: Design, prior_set: PriorSet) -> Structure:
     """The structure whose compiled model serves this design and prior set."""
     bounded = not all(is_unbounded(prior.distribution) for prior in prior_set.coefficients)
-    return Structure(design.family, len(design.columns), design.offset is not None, bounded)
+    constant = design.has_intercept and len(design.columns) == 1
+    return Structure(design.family, len(design.columns), design.offset is not None, bounded, constant)
 
 
 def bound_inputs(design: Design, prior_set: PriorSet, scaling: Scaling) -> Inputs:

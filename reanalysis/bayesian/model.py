@@ -38,6 +38,9 @@ FloatArray = NDArray[np.float64]
 COEFFICIENTS = "columns(c0)"
 """bambi's name for the one term that holds all columns."""
 
+INTERCEPT = "Intercept"
+"""bambi's name for a constant column that stands alone; as a term of ours it would be refused."""
+
 _SLOT = {slot: position for position, slot in enumerate(Slot)}
 
 
@@ -53,12 +56,27 @@ class Structure:
     offset : bool
     bounded : bool
         Whether a coefficient's prior lives on a half line or an interval.
+    constant : bool
+        Whether the intercept is the only column; the graph then holds no matrix.
     """
 
     family: Family
     columns: int
     offset: bool
     bounded: bool
+    constant: bool
+
+    @property
+    def term(self) -> str:
+        """Bambi's name for the coefficients."""
+        return INTERCEPT if self.constant else COEFFICIENTS
+
+    def prior_rows(self, rows: Any) -> dict[str, Any]:
+        """The rows of packed priors by bambi's names, from an array of shape (k + a, 13)."""
+        named = {self.term: rows[0] if self.constant else rows[: self.columns]}
+        if self.family.auxiliary is not None:
+            named[self.family.auxiliary] = rows[self.columns]
+        return named
 
 
 @dataclass(frozen=True, slots=True)
@@ -91,10 +109,11 @@ class CompiledModel:
     def bind(self, inputs: Inputs) -> Any:
         """Return nutpie's model for these data and priors; nothing is compiled."""
         values: dict[str, NDArray[Any]] = {
-            "matrix": inputs.matrix,
             "response": inputs.response.astype(self.response_dtype),
             "priors": inputs.priors.ravel(),
         }
+        if not self.structure.constant:
+            values["matrix"] = inputs.matrix
         if inputs.offset is not None:
             values["offset"] = inputs.offset
         return self.compiled.with_data(**values)
@@ -111,7 +130,7 @@ def compile_model(structure: Structure, inputs: Inputs) -> CompiledModel:
     priors = pytensor.shared(inputs.priors.ravel(), name="priors")
     model = build_model(structure, inputs, priors)
     check_model(model, structure, inputs, priors)
-    shared = _share_data(model.backend.model, inputs)
+    shared = _share_data(model.backend.model, structure, inputs)
     names = [variable.name for variable in shared.free_RVs]
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")  # numba on caching, of no concern to a reader
@@ -129,13 +148,13 @@ def build_model(structure: Structure, inputs: Inputs, priors: Any) -> bmb.Model:
     All columns, the intercept's ones among them, enter as one matrix term: their number then
     costs no compile time, and bambi neither centres nor renames anything.
     """
-    rows = priors.reshape((-1, WIDTH))
     domain = _ANYWHERE if structure.bounded else _WHOLE_LINE
-    kinds = {COEFFICIENTS: _PackedPrior(rows[: structure.columns], domain)}
-    if structure.family.auxiliary is not None:
-        kinds[structure.family.auxiliary] = _PackedPrior(rows[structure.columns], _HALF_LINE)
+    kinds = {
+        name: _PackedPrior(row, domain if name == structure.term else _HALF_LINE)
+        for name, row in structure.prior_rows(priors.reshape((-1, WIDTH))).items()
+    }
     data = pd.DataFrame({_RESPONSE: inputs.response, "c0": 0.0})
-    formula = f"{_RESPONSE} ~ 0 + columns(c0)"
+    formula = f"{_RESPONSE} ~ 1" if structure.constant else f"{_RESPONSE} ~ 0 + columns(c0)"
     if inputs.offset is not None:
         data["exposed"] = inputs.offset
         formula += " + offset(exposed)"
@@ -164,10 +183,7 @@ def check_model(model: bmb.Model, structure: Structure, inputs: Inputs, priors: 
     design = np.asarray(model.parameters[_parent(structure.family)].design.common)
     expected = {"matrix": (design[:, : structure.columns], inputs.matrix)}
     expected["outcome"] = (np.asarray(graph.rvs_to_values[graph[_RESPONSE]].data), inputs.response)
-    rows = inputs.priors.reshape((-1, WIDTH))
-    asked = {COEFFICIENTS: rows[: structure.columns]}
-    if structure.family.auxiliary is not None:
-        asked[structure.family.auxiliary] = rows[structure.columns]
+    asked = structure.prior_rows(inputs.priors.reshape((-1, WIDTH)))
     for name, row in asked.items():
         expected[f"prior of {name}"] = (_hyperparameters(graph[name]), row)
     wrong = [what for what, (got, want) in expected.items() if not np.array_equal(got, want)]
@@ -305,18 +321,22 @@ _HALF_LINE = _Domain(_positive_density, log_transform, _positive_start)
 _ANYWHERE = _Domain(_any_density, _SupportTransform(), _any_start)
 
 
-def _share_data(model: pm.Model, inputs: Inputs) -> pm.Model:
+def _share_data(model: pm.Model, structure: Structure, inputs: Inputs) -> pm.Model:
     """Replace the constants that hold matrix, outcome and offset by shared variables of those names."""
     graph, _ = fgraph_from_model(model)
     observed = np.asarray(model.rvs_to_values[model[_RESPONSE]].data)
-    wanted: dict[str, NDArray[Any]] = {"matrix": inputs.matrix, "response": observed}
+    wanted: dict[str, NDArray[Any]] = {"response": observed}
+    if not structure.constant:
+        wanted["matrix"] = inputs.matrix
     if inputs.offset is not None:
         wanted["offset"] = inputs.offset
     replacements: dict[Any, Any] = {}
     for variable in graph.variables:
         if isinstance(variable, TensorConstant):
             for name, array in wanted.items():
-                if variable.data.shape == array.shape and np.array_equal(variable.data, array):
+                # An outcome of counts may equal the offset, but not in its type.
+                same_kind = variable.data.dtype == array.dtype and variable.data.shape == array.shape
+                if same_kind and np.array_equal(variable.data, array):
                     replacements[variable] = pytensor.shared(variable.data, name=name)
     missing = sorted(set(wanted) - {shared.name for shared in replacements.values()})
     if missing or len(replacements) != len(wanted):

@@ -9,7 +9,7 @@ import numpy as np
 import nutpie
 from numpy.typing import NDArray
 
-from reanalysis.bayesian.model import COEFFICIENTS
+from reanalysis.bayesian.model import Structure
 from reanalysis.bayesian.settings import SamplerSettings
 
 FloatArray = NDArray[np.float64]
@@ -33,15 +33,15 @@ class RawDraws:
     energy: FloatArray
 
 
-def sample(bound: Any, auxiliary: str | None, settings: SamplerSettings) -> RawDraws | None:
+def sample(bound: Any, structure: Structure, settings: SamplerSettings) -> RawDraws | None:
     """Run the sampler.
 
     Parameters
     ----------
     bound : nutpie model
         Bound to data and priors.
-    auxiliary : str or None
-        Name of the family's auxiliary parameter.
+    structure : Structure
+        Of the model; names its parameters.
     settings : SamplerSettings
 
     Returns
@@ -65,15 +65,16 @@ def sample(bound: Any, auxiliary: str | None, settings: SamplerSettings) -> RawD
     except RuntimeError:  # what nutpie raises when every initial point fails
         return None
     posterior, stats = trace["posterior"], trace["sample_stats"]
-    coefficients = np.asarray(posterior[COEFFICIENTS].values, dtype=np.float64)
+    coefficients = np.asarray(posterior[structure.term].values, dtype=np.float64)
     shape = coefficients.shape[:2]
+    auxiliary = structure.family.auxiliary
     extra = (
         np.empty((*shape, 0))
         if auxiliary is None
         else np.asarray(posterior[auxiliary].values, dtype=np.float64).reshape(*shape, 1)
     )
     return RawDraws(
-        coefficients,
+        coefficients.reshape(*shape, structure.columns),
         extra,
         np.asarray(stats["diverging"].values, dtype=np.bool_),
         np.asarray(stats["energy"].values, dtype=np.float64),

@@ -150,6 +150,11 @@ def ratio(value: float) -> str:
     return estimate(value, 2 if value < 10.0 else 1 if value < 100.0 else 0)
 
 
+def sensitivity(value: float) -> str:
+    """Return a sensitivity with three decimals, never as 0: ``0.077``, ``< 0.001``."""
+    return f"<{THIN}0.001" if value < 0.0005 else estimate(value, 3)
+
+
 def rhat(value: float) -> str:
     """Return an R-hat with three decimals: ``1.003``."""
     return estimate(value, 3)

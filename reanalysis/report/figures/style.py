@@ -199,7 +199,9 @@ def tick_values(low: float, high: float, wanted: int) -> tuple[list[float], list
 def number_axis(axes: Axes, limits: tuple[float, float], label: str, wanted: int = 7) -> None:
     """Give a picture its horizontal number axis."""
     axes.set_xlim(*limits)
-    values, texts = tick_values(*limits, wanted)
+    # A number right at the end of the axis would be cut off by the edge of the picture.
+    air = 0.015 * (limits[1] - limits[0])
+    values, texts = tick_values(limits[0] + air, limits[1] - air, wanted)
     axes.set_xticks(values, texts)
     axes.set_xlabel(label, color=SOFT, fontsize=SMALL_TEXT, labelpad=3)
 

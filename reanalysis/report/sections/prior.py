@@ -112,7 +112,7 @@ def _power_scaling(scaling: PowerScaling) -> str:
         "prior dominates": "the prior dominates a likelihood that says little",
     }[scaling.diagnosis]
     return (
-        f"Power-scaling sensitivity (Kallioinen et al. 2024) is {numbers.estimate(scaling.prior, 3)} to the "
-        f"prior and {numbers.estimate(scaling.likelihood, 3)} to the likelihood; from "
+        f"Power-scaling sensitivity (Kallioinen et al. 2024) is {numbers.sensitivity(scaling.prior)} to the "
+        f"prior and {numbers.sensitivity(scaling.likelihood)} to the likelihood; from "
         f"{numbers.given(POWER_SCALING_THRESHOLD)} up an answer counts as sensitive: {words}."
     )
