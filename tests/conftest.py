@@ -45,7 +45,7 @@ def pytest_make_collect_report() -> Generator[None, pytest.CollectReport, pytest
     return _refuse((yield))
 
 
-# The fixtures below import what they need when they are used: most tests need none of it, and it takes seconds.
+# The fixtures below import what they need when they are used: it takes seconds, and few tests need any of it.
 
 
 @pytest.fixture(scope="session")
