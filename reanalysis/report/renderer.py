@@ -77,8 +77,17 @@ def _deaf_to_interrupts() -> Iterator[None]:
 
 
 def warm_up() -> None:
-    """Load what rendering needs."""
-    from reanalysis.report import document, html, pdf  # noqa: F401
+    """Load what rendering needs, by rendering a page of no consequence."""
+    from reanalysis.report import document  # noqa: F401
+    from reanalysis.report.blocks import Document, Figure, Section, StatusLine
+    from reanalysis.report.figures.paired import PairedRow, draw_small_pair, paired_data
+    from reanalysis.report.figures.style import Bar, CoredBar
+    from reanalysis.report.pdf import render_pdf
+
+    row = PairedRow("effect", Bar(1.0, 0.0, 2.0), CoredBar(1.0, 0.0, 2.0, 0.5, 1.5), 0.5)
+    figure = Figure(None, "", "warm-up", draw_small_pair(paired_data([row], "effect")))
+    status = StatusLine("sound", "", "")
+    render_pdf(Document("warm-up", "", "", "en-GB", status, (Section("a", "a", (figure,)),)))
 
 
 def render(analysis: Analysis, formats: tuple[str, ...]) -> Rendered:
