@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+import io
 import sys
 from collections.abc import Sequence
 from pathlib import Path
@@ -18,12 +19,20 @@ def main(arguments: Sequence[str] | None = None) -> int:
     0: all sound. 1: some study failed, or its computation is not sound. 2: wrong usage or invalid
     input. 130: stopped by the user.
     """
+    _accept_any_terminal()
     options = _parser().parse_args(arguments)
     try:
         return int(_run(options))
     except KeyboardInterrupt:
         sys.stderr.write("stopped; nothing was left half-written\n")
         return EXIT_STOPPED
+
+
+def _accept_any_terminal() -> None:
+    """Let a terminal that lacks a character, such as the thin space before a unit, show another one."""
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):
+            stream.reconfigure(errors="replace")
 
 
 def _run(options: argparse.Namespace) -> int:
@@ -83,7 +92,8 @@ class _Version(argparse.Action):
     def __call__(self, parser: argparse.ArgumentParser, *_: object, **__: object) -> None:
         from importlib.metadata import version
 
-        parser.exit(message=f"reanalysis {version('reanalysis')}\n")
+        sys.stdout.write(f"reanalysis {version('reanalysis')}\n")
+        parser.exit()
 
 
 def _formats(text: str) -> tuple[str, ...]:
