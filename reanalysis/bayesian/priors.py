@@ -126,7 +126,7 @@ def sceptical_priors(design: Design, weak: PriorSet, questions: tuple[QuestionSp
     -----
     The SD is delta / z, where delta is the smallest effect that matters and z the normal quantile
     that leaves 5 % beyond delta: in the asked direction, or on both sides together for ``either``
-    (Spiegelhalter, Freedman and Parmar 1994, section 4.2; from memory).
+    (Spiegelhalter, Freedman and Parmar 1994).
     """
     doubts: dict[str, ParameterPrior] = {}
     for question in questions:
@@ -147,7 +147,11 @@ def sceptical_priors(design: Design, weak: PriorSet, questions: tuple[QuestionSp
 
 
 def author_priors(prior: PriorSpec, design: Design, weak: PriorSet) -> PriorSet:
-    """A prior set of the author's: the stated priors, weak ones for whatever is not stated."""
+    """A prior set of the author's: the stated priors, weak ones for whatever is not stated.
+
+    The weak prior of an intercept is about the centre of the data: an intercept that is not stated
+    stays there, wherever the author wants intercepts to be.
+    """
     stated: dict[str, ParameterPrior] = {}
     for column in design.columns:
         key = column.name if column.name in prior.terms else column.term
@@ -162,7 +166,7 @@ def author_priors(prior: PriorSpec, design: Design, weak: PriorSet) -> PriorSet:
     return PriorSet(
         name=prior.name,
         source=prior.source,
-        intercept_at=prior.intercept_at,
+        intercept_at=prior.intercept_at if weak.coefficients[0].name in stated else weak.intercept_at,
         coefficients=tuple(stated.get(known.name, known) for known in weak.coefficients),
         auxiliary=auxiliary,
     )
