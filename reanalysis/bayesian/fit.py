@@ -113,7 +113,7 @@ def _posterior(
     centred: Marginal | None = None
     if design.has_intercept:
         centred = summarise(centred_intercept(draws.coefficients, design), level)
-    judged = (*marginals, *auxiliary) if centred is None else (*marginals[1:], *auxiliary, centred)
+    judged = (*marginals, *auxiliary) if centred is None else (*marginals, *auxiliary, centred)
     return PosteriorFit(
         prior_set=prior_set,
         level=level,
