@@ -94,6 +94,13 @@ class _Fitter:
     store: ModelStore
 
     def __call__(self, prior_set: PriorSet) -> PosteriorResult:
+        if self._perfect():
+            return NoPosterior(
+                prior_set,
+                "the model reproduces the outcome exactly, and no residual variation is left to learn from",
+                "check whether the outcome was computed from the predictors",
+                None,
+            )
         improper = self._improper(prior_set)
         if improper is not None:
             return NoPosterior(
@@ -105,6 +112,10 @@ class _Fitter:
             )
         level = self.prepared.study.spec.model.level
         return fit_posterior(self.prepared.design, prior_set, self.settings, level, self.store)
+
+    def _perfect(self) -> bool:
+        # The likelihood then grows without limit as the residual standard deviation goes to zero.
+        return self.frequentist.method == "OLS" and not self.frequentist.goodness.scale > 0.0
 
     def _improper(self, prior_set: PriorSet) -> NotEstimable | None:
         pairs = zip(self.frequentist.coefficients, prior_set.coefficients, strict=True)

@@ -117,7 +117,8 @@ def _estimate(result: Estimate | NotEstimable, level: float) -> schema.EstimateP
     if isinstance(result, NotEstimable):
         return schema.AbsentPart(reason=result.reason, advice=result.advice)
     values = {key: value for key, value in asdict(result).items() if key != "name"}
-    return schema.EstimatePart(**(values | {"df": _finite(result.df), "level": level}))
+    finite = {"df": _finite(result.df), "statistic": _finite(result.statistic)}
+    return schema.EstimatePart(**(values | finite | {"level": level}))
 
 
 def _marginal(marginal: Marginal, level: float) -> schema.MarginalPart:
@@ -282,7 +283,10 @@ def _check(result: PosteriorResult) -> schema.CheckPart:
 
 def _fit(analysis: Analysis) -> schema.FitPart:
     fit = analysis.frequentist
-    values = asdict(fit.goodness) | {"condition_number": _finite(fit.goodness.condition_number)}
+    measures = fit.goodness
+    values = asdict(measures) | {
+        name: _finite(getattr(measures, name)) for name in ("loglik", "aic", "condition_number")
+    }
     return schema.FitPart(method=fit.method, distribution=fit.distribution, converged=fit.converged, **values)
 
 

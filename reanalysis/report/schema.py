@@ -74,12 +74,12 @@ class DesignPart(_Part):
 
 
 class EstimatePart(_Part):
-    """A frequentist estimate; `df` is null for z."""
+    """A frequentist estimate; `df` is null for z, `statistic` where the standard error is 0."""
 
     kind: Literal["estimate"] = "estimate"
     estimate: float
     se: float
-    statistic: float
+    statistic: float | None
     df: float | None
     p: float
     low: float
@@ -256,16 +256,16 @@ class CheckPart(_Part):
 
 
 class FitPart(_Part):
-    """The frequentist fit as a whole."""
+    """The frequentist fit as a whole; `loglik` and `aic` are null for a perfect fit."""
 
     method: str
     distribution: str
     n: int
     df_residual: float
-    loglik: float
+    loglik: float | None
     deviance: float
     null_deviance: float
-    aic: float
+    aic: float | None
     r_squared: float | None
     r_squared_kind: str
     scale: float

@@ -65,7 +65,7 @@ REFERENCES = (
     ),
     (
         "Spiegelhalter, D. J., Freedman, L. S. and Parmar, M. K. B. (1994). Bayesian approaches to "
-        "randomized trials. Journal of the Royal Statistical Society A 157, 357–416."
+        "randomized trials. Journal of the Royal Statistical Society A 157."
     ),
     (
         "Vehtari, A., Gelman, A., Simpson, D., Carpenter, B. and Bürkner, P.-C. (2021). Rank-normalization, "
