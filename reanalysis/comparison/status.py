@@ -40,19 +40,32 @@ def judge(
 
 
 def _of_posteriors(posteriors: Sequence[PosteriorResult], main_prior: str) -> list[Caveat]:
-    caveats = []
+    missing: dict[str, list[str]] = {}
+    doubtful: dict[str, list[str]] = {}
     for posterior in posteriors:
         name = posterior.prior_set.name
         if isinstance(posterior, NoPosterior):
-            failed = "failed" if name == main_prior else "doubtful"
-            words = f"There is no posterior under the {name} prior set: {posterior.reason}."
-            caveats.append(Caveat("failed" if failed == "failed" else "doubtful", words))
+            missing.setdefault(posterior.reason, []).append(name)
         elif posterior.check.verdict == "doubtful":
-            found = "; ".join(posterior.check.findings)
-            caveats.append(
-                Caveat("doubtful", f"The computation under the {name} prior set is doubtful ({found}).")
-            )
+            doubtful.setdefault("; ".join(posterior.check.findings), []).append(name)
+    caveats = [
+        Caveat(
+            "failed" if main_prior in names else "doubtful",
+            f"There is no posterior under the {_sets(names)}: {reason}.",
+        )
+        for reason, names in missing.items()
+    ]
+    caveats += [
+        Caveat("doubtful", f"The computation under the {_sets(names)} is doubtful ({found}).")
+        for found, names in doubtful.items()
+    ]
     return caveats
+
+
+def _sets(names: Sequence[str]) -> str:
+    if len(names) == 1:
+        return f"{names[0]} prior set"
+    return f"{', '.join(names[:-1])} and {names[-1]} prior sets"
 
 
 def _of_frequentist(frequentist: FrequentistFit) -> list[Caveat]:

@@ -183,15 +183,17 @@ def _alt_of_pair(compared: Compared) -> str:
 
 
 def _overlap(compared: Sequence[Compared]) -> str:
-    agreeing = sum(one.agreement == "agree" for one in compared)
-    if agreeing == len(compared):
-        return (
-            "The two analyses come to the same conclusions."
-            if len(compared) > 1
-            else ("The two analyses come to the same conclusion.")
-        )
-    apart = ", ".join(one.question.name for one in compared if one.agreement != "agree")
-    return f"They do not come to the same conclusion on: {apart}."
+    apart = [one.question.name for one in compared if one.agreement.startswith("differ")]
+    silent = [one.question.name for one in compared if one.agreement == "cannot be compared"]
+    sentences = []
+    if apart:
+        sentences.append(f"They do not come to the same conclusion on: {', '.join(apart)}.")
+    if silent:
+        sentences.append(f"They cannot be compared on: {', '.join(silent)}.")
+    if not sentences:
+        plural = "s" if len(compared) > 1 else ""
+        sentences.append(f"The two analyses come to the same conclusion{plural}.")
+    return " ".join(sentences)
 
 
 def _prior_of(compared: Compared, fit: PosteriorFit) -> Distribution:

@@ -151,11 +151,14 @@ def prior_reading(compared: Compared) -> RichText:
     span = _span(low, high)
     if compared.dependence == "none":
         return (
-            f"No: the conclusions are the same under all {numbers.count(len(given))} prior sets. "
-            f"The probability {claim} {span}."
+            f"No: the conclusions are the same under {_all_sets(len(given))}. The probability {claim} {span}."
         )
     about = {"direction": "the direction", "size": "the size", "both": "direction and size"}
     return f"Yes, for {about[compared.dependence]}: the probability {claim} {span}."
+
+
+def _all_sets(number: int) -> str:
+    return "both prior sets" if number == 2 else f"all {numbers.count(number)} prior sets"
 
 
 def _span(low: tuple[PriorReading, TailProbability], high: tuple[PriorReading, TailProbability]) -> str:
