@@ -45,7 +45,7 @@ def norris_fit(norris: Design, posterior_of: Any) -> PosteriorFit:
 def test_flat_posterior_is_the_frequentist_t(
     request: pytest.FixtureRequest, name: str, known: dict[str, Any], exact: Any, agree_column: Any
 ) -> None:
-    """Under p(beta, sigma) ∝ 1/sigma a posterior is t with n - p df: interval, sd, P(> 0) = 1 - one-sided p."""
+    """Under p(beta, sigma) ∝ 1/sigma a posterior is t with n - p df: interval, sd, and 1 - one-sided p."""
     design = request.getfixturevalue(name)
     fit = (
         request.getfixturevalue("plant_fits")["flat"]
@@ -308,7 +308,7 @@ def test_every_reported_number_is_judged(fitted: Any) -> None:
     result, _ = fitted(hidden, hidden)
 
     assert isinstance(result, NoPosterior)
-    assert result.check.max_rhat > 1.5
+    assert result.check.max_rhat > 1.3
 
 
 def test_a_sound_run_is_not_repeated(fitted: Any, sampler: Any) -> None:
