@@ -16,10 +16,15 @@ def resolve_questions(specs: tuple[QuestionSpec, ...], design: Design) -> tuple[
     Raises
     ------
     DesignError
-        When a question is about something that is not a coefficient; names those that there are.
+        When a question is about something that is not a coefficient, naming those that there are;
+        or about the intercept of a model with predictors.
     """
     names = [column.name for column in design.columns]
     problems = [_unknown(spec, names) for spec in specs if spec.effect not in names]
+    if design.has_intercept and len(names) > 1:
+        # The intercept's prior is about the centre of the data: to doubt or to sweep it would be to
+        # doubt or sweep something else than the coefficient.
+        problems += [_about_intercept(spec, names) for spec in specs if spec.effect == names[0]]
     if problems:
         raise DesignError(problems)
     return tuple(
@@ -33,6 +38,15 @@ def resolve_questions(specs: tuple[QuestionSpec, ...], design: Design) -> tuple[
             act_when=spec.act_when,
         )
         for spec in specs
+    )
+
+
+def _about_intercept(spec: QuestionSpec, names: list[str]) -> Problem:
+    return Problem(
+        where=f'[[question]] "{spec.name}", effect',
+        found="the intercept is the outcome where every predictor is 0, which is no effect",
+        allowed=", ".join(names[1:]),
+        advice="ask about a coefficient, or fit a model of the intercept alone",
     )
 
 

@@ -49,12 +49,10 @@ def effect_draws(question: Question, fit: PosteriorFit) -> FloatArray:
 
 def in_direction(question: Question, draws: FloatArray) -> BoolArray:
     """Whether each draw has the asked sign; for ``either``, the sign that most draws have."""
-    positive = draws > 0.0
-    if question.direction == "less":
-        return ~positive
-    if question.direction == "either" and np.mean(positive) < 0.5:
-        return ~positive
-    return positive
+    positive, negative = draws > 0.0, draws < 0.0
+    if question.direction == "either":
+        return negative if np.mean(negative) > np.mean(positive) else positive
+    return negative if question.direction == "less" else positive
 
 
 def beyond(question: Question, draws: FloatArray) -> BoolArray:
