@@ -206,11 +206,12 @@ def _doubt(column: Column, design: Design, question: QuestionSpec) -> ParameterP
         latent = design.family.latent_sd
         spread = _response_sd(design) if latent is None else latent
         outcome = f"sd({_outcome(design)})" if latent is None else "the outcome's SD on the model's scale"
+        per_sd = "" if column.kind == "intercept" else f" / sd({column.name})"
         return ParameterPrior(
             column.name,
             Normal(sd=SCEPTICAL_FALLBACK * spread / _spread(column)),
             f"no smallest effect that matters was stated; used instead: "
-            f"{SCEPTICAL_FALLBACK} {outcome} / sd({column.name})",
+            f"{SCEPTICAL_FALLBACK} {outcome}{per_sd}",
         )
     tail = SCEPTICAL_TAIL / 2.0 if question.direction == "either" else SCEPTICAL_TAIL
     sides = " either way" if question.direction == "either" else ""

@@ -169,6 +169,14 @@ def test_sceptic_without_a_size_says_what_was_used(plant: Design, spector: Desig
     assert "the outcome's SD on the model's scale / sd(GPA)" in grades.origin
 
 
+def test_sceptic_of_an_intercept_alone(modelled: Callable[..., Design], mixed: pd.DataFrame) -> None:
+    """A question about a mean has no column to scale by: a quarter SD of the outcome."""
+    prior = doubt(modelled(mixed, "y ~ 1"), "Intercept")
+
+    assert prior.distribution.sd == pytest.approx(0.25 * np.std(mixed["y"]), rel=1e-12)
+    assert prior.origin.endswith("used instead: 0.25 sd(y)")
+
+
 def test_sceptic_doubts_only_what_is_asked(plant: Design) -> None:
     """All else keeps its weak prior; of two questions about one effect the smaller limit rules."""
     weak = weak_priors(plant)
