@@ -14,7 +14,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from reanalysis.bayesian.densities import log_density
+from reanalysis.bayesian.densities import is_unbounded, log_density
 from reanalysis.bayesian.log_density import log_prior
 from reanalysis.bayesian.result import (
     NoPosterior,
@@ -85,21 +85,23 @@ def sweep_question(
     """
     if isinstance(main, NoPosterior):
         return NoSweep(question.name, f"there is no posterior under the main prior set: {main.reason}")
-    bases = [_base(fit, main.prior_set, question, design) for fit in (main, *others)]
+    fits = [fit for fit in (main, *others) if _covers(fit.prior_set, main.prior_set, question.column)]
+    bases = [_base(fit, main.prior_set, question, design) for fit in fits]
     points: list[SweepPoint] = []
     refits = 0
     for width in reversed(choose_widths(question, main)):
-        weights, base = _best_weights(bases, width)
-        if not _trustworthy(weights):
+        served = _best_weights(bases, width)
+        if served is None:
             fit = refit(_at_width(main.prior_set, question, width))
             refits += 1
             if isinstance(fit, NoPosterior):
                 continue
             base = _base(fit, main.prior_set, question, design)
             bases.append(base)
-            points.append(_point(question, main.level, width, (base, None)))
-        else:
-            points.append(_point(question, main.level, width, (base, weights)))
+            served = (base, None)
+        points.append(_point(question, main.level, width, served))
+    if not points:
+        return NoSweep(question.name, "the model could not be fitted at any width")
     points.reverse()
     return Sweep(
         question=question.name,
@@ -130,6 +132,15 @@ def choose_widths(question: Question, main: PosteriorFit) -> FloatArray:
     return np.geomspace(NARROWEST * spread, widest, WIDTHS)
 
 
+def _covers(own: PriorSet, main: PriorSet, column: int) -> bool:
+    # Draws under a prior on a half line or an interval lack values that no weight can bring back.
+    for position, (mine, wanted) in enumerate(zip(own.coefficients, main.coefficients, strict=True)):
+        same = mine.distribution == wanted.distribution and own.intercept_at == main.intercept_at
+        if not is_unbounded(mine.distribution) and (position == column or not same):
+            return False
+    return True
+
+
 def _base(fit: PosteriorFit, main: PriorSet, question: Question, design: Design) -> _Base:
     silent = ParameterPrior(question.effect, Flat(), "left out here, added for each width")
     without = _replace_prior(main, question.column, silent)
@@ -149,11 +160,14 @@ def _at_width(main: PriorSet, question: Question, width: float) -> PriorSet:
     return replace(changed, name=f"{main.name}, {question.effect} with SD {width:.6g}")
 
 
-def _best_weights(bases: list[_Base], width: float) -> tuple[Weights, _Base]:
+def _best_weights(bases: list[_Base], width: float) -> tuple[_Base, Weights] | None:
+    if not bases:
+        return None
     normal = Normal(sd=float(width))
     ratios = [base.rest + log_density(normal, base.effect) for base in bases]
     best = int(np.argmax([effective_size(ratio) for ratio in ratios]))
-    return smooth_weights(ratios[best]), bases[best]
+    weights = smooth_weights(ratios[best])
+    return (bases[best], weights) if _trustworthy(weights) else None
 
 
 def _point(
