@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from reanalysis.bayesian.priors import resolve_prior_sets
 from reanalysis.bayesian.result import PriorSet
@@ -13,6 +13,7 @@ from reanalysis.design.model import Design
 from reanalysis.design.outlook import Finding, outlook
 from reanalysis.effects.ask import resolve_questions
 from reanalysis.effects.result import Question
+from reanalysis.errors import DesignError, Problem, ReanalysisError
 from reanalysis.study.formula import check_formula
 from reanalysis.study.spec import Study
 
@@ -63,19 +64,42 @@ def prepare(study: Study) -> Prepared:
     Raises
     ------
     ReanalysisError
-        With every problem that the stage found.
+        With every problem that the stage found, those of the study file at their lines.
     """
+    try:
+        return _prepare(study)
+    except ReanalysisError as error:
+        raise type(error)(_placed(study, problem) for problem in error.problems) from error
+
+
+def _prepare(study: Study) -> Prepared:
     parts = check_formula(study.spec.model.formula)
     dataset = load_dataset(study, columns=frozenset(columns_used(study.spec, parts)))
     design = build_design(study.spec, dataset)
-    return Prepared(
-        study=study,
-        source=_source(study, dataset),
-        design=design,
-        prior_sets=resolve_prior_sets(study.spec, design),
-        questions=resolve_questions(study.spec.question, design),
-        findings=outlook(design),
-    )
+    prior_sets, questions = _resolve(study, design)
+    return Prepared(study, _source(study, dataset), design, prior_sets, questions, outlook(design))
+
+
+def _resolve(study: Study, design: Design) -> tuple[tuple[PriorSet, ...], tuple[Question, ...]]:
+    """Resolve priors and questions; when both have problems, report those of both."""
+    problems: list[Problem] = []
+    prior_sets: tuple[PriorSet, ...] = ()
+    questions: tuple[Question, ...] = ()
+    try:
+        prior_sets = resolve_prior_sets(study.spec, design)
+    except DesignError as error:
+        problems += error.problems
+    try:
+        questions = resolve_questions(study.spec.question, design)
+    except DesignError as error:
+        problems += error.problems
+    if problems:
+        raise DesignError(problems)
+    return prior_sets, questions
+
+
+def _placed(study: Study, problem: Problem) -> Problem:
+    return replace(problem, where=study.places.get(problem.where, problem.where))
 
 
 def _source(study: Study, dataset: Dataset) -> Source:

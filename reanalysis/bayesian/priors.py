@@ -28,6 +28,7 @@ from reanalysis.bayesian.result import ParameterPrior, PriorSet
 from reanalysis.design.model import Column, Design
 from reanalysis.errors import DesignError, Problem
 from reanalysis.study.distributions import Flat, HalfStudentT, LogFlat, Normal
+from reanalysis.study.locate import dotted
 from reanalysis.study.spec import PriorSpec, QuestionSpec, StudySpec
 
 SCEPTICAL_TAIL = 0.05
@@ -56,7 +57,9 @@ def resolve_prior_sets(spec: StudySpec, design: Design) -> tuple[PriorSet, ...]:
     DesignError
         When a prior is given for something that is not a coefficient, a term or an auxiliary parameter.
     """
-    problems = [problem for prior in spec.prior for problem in _unknown_keys(prior, design)]
+    problems = [
+        problem for number, prior in enumerate(spec.prior) for problem in _unknown_keys(number, prior, design)
+    ]
     if problems:
         raise DesignError(problems)
     weak = weak_priors(design)
@@ -247,7 +250,7 @@ def _column(design: Design, name: str) -> Column | None:
     return next((column for column in design.columns if column.name == name), None)
 
 
-def _unknown_keys(prior: PriorSpec, design: Design) -> list[Problem]:
+def _unknown_keys(number: int, prior: PriorSpec, design: Design) -> list[Problem]:
     names = {column.name for column in design.columns} | {column.term for column in design.columns}
     auxiliary = _auxiliary_names(design)
     problems = []
@@ -256,7 +259,7 @@ def _unknown_keys(prior: PriorSpec, design: Design) -> list[Problem]:
             close = difflib.get_close_matches(key, sorted(allowed), n=1)
             problems.append(
                 Problem(
-                    where=f'[[prior]] "{prior.name}", {section}."{key}"',
+                    where=dotted(("prior", number, section, key)),
                     found=f'the model has nothing called "{key}"',
                     allowed=", ".join(sorted(allowed)) or "none for this family",
                     advice=f'write "{close[0]}"' if close else "use one of these names, or remove the prior",

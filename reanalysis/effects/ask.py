@@ -7,6 +7,7 @@ import difflib
 from reanalysis.design.model import Design
 from reanalysis.effects.result import Question
 from reanalysis.errors import DesignError, Problem
+from reanalysis.study.locate import dotted
 from reanalysis.study.spec import QuestionSpec
 
 
@@ -20,11 +21,12 @@ def resolve_questions(specs: tuple[QuestionSpec, ...], design: Design) -> tuple[
         or about the intercept of a model with predictors.
     """
     names = [column.name for column in design.columns]
-    problems = [_unknown(spec, names) for spec in specs if spec.effect not in names]
+    places = {spec: dotted(("question", number, "effect")) for number, spec in enumerate(specs)}
+    problems = [_unknown(spec, names, places[spec]) for spec in specs if spec.effect not in names]
     if design.has_intercept and len(names) > 1:
         # The intercept's prior is about the centre of the data: to doubt or to sweep it would be to
         # doubt or sweep something else than the coefficient.
-        problems += [_about_intercept(spec, names) for spec in specs if spec.effect == names[0]]
+        problems += [_about_intercept(names, places[spec]) for spec in specs if spec.effect == names[0]]
     if problems:
         raise DesignError(problems)
     return tuple(
@@ -41,19 +43,19 @@ def resolve_questions(specs: tuple[QuestionSpec, ...], design: Design) -> tuple[
     )
 
 
-def _about_intercept(spec: QuestionSpec, names: list[str]) -> Problem:
+def _about_intercept(names: list[str], where: str) -> Problem:
     return Problem(
-        where=f'[[question]] "{spec.name}", effect',
+        where=where,
         found="the intercept is the outcome where every predictor is 0, which is no effect",
         allowed=", ".join(names[1:]),
         advice="ask about a coefficient, or fit a model of the intercept alone",
     )
 
 
-def _unknown(spec: QuestionSpec, names: list[str]) -> Problem:
+def _unknown(spec: QuestionSpec, names: list[str], where: str) -> Problem:
     close = difflib.get_close_matches(spec.effect, names, n=1)
     return Problem(
-        where=f'[[question]] "{spec.name}", effect',
+        where=where,
         found=f'the model has no coefficient "{spec.effect}"',
         allowed=", ".join(names),
         advice=f'write "{close[0]}"' if close else "use one of these names",

@@ -55,6 +55,21 @@ def line_of(lines: Mapping[KeyPath, int], path: KeyPath) -> int | None:
     return None
 
 
+def dotted(key: KeyPath) -> str:
+    """Write a key path as a message shows it: ``model.family``, ``question no. 2, effect``."""
+    if len(key) > 1 and isinstance(key[1], int):
+        rest = dotted(key[2:])
+        return f"{key[0]} no. {key[1] + 1}" + (f", {rest}" if rest else "")
+    text = ""
+    for step in key:
+        if isinstance(step, int):
+            text += f"[{step + 1}]"
+        else:
+            name = step if _BARE_KEY.fullmatch(step) else f'"{step}"'
+            text += f".{name}" if text else name
+    return text
+
+
 class _Walker:
     def __init__(self, text: str) -> None:
         self.text = text

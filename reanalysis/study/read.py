@@ -11,17 +11,17 @@ from typing import Any
 
 from pydantic import ValidationError
 
-from reanalysis.errors import Problem, StudyError
+from reanalysis.errors import FormulaError, Problem, StudyError
 from reanalysis.study.checks import cross_check
 from reanalysis.study.datafile import resolve_data_file
 from reanalysis.study.findings import Finding, explain
-from reanalysis.study.locate import KeyPath, line_of, locate_keys
+from reanalysis.study.formula import check_formula
+from reanalysis.study.locate import KeyPath, dotted, line_of, locate_keys
 from reanalysis.study.spec import Study, StudySpec
 
 MAX_STUDY_BYTES = 1_000_000
 
 _PLACE = re.compile(r"\s*\(at (?:line (\d+), column (\d+)|end of document)\)$")
-_BARE_KEY = re.compile(r"[A-Za-z0-9_-]+")
 
 
 def load_study(path: Path, *, allow_outside: bool = False) -> Study:
@@ -49,6 +49,7 @@ def load_study(path: Path, *, allow_outside: bool = False) -> Study:
     raw, lines = _parse(path, text)
     spec, findings = _validate(raw)
     findings += cross_check(raw)
+    findings += _formula(raw)
     data_path = _data_path(raw, path, allow_outside=allow_outside)
     if isinstance(data_path, Finding):
         findings.append(data_path)
@@ -60,6 +61,7 @@ def load_study(path: Path, *, allow_outside: bool = False) -> Study:
         data_path=data_path,
         sha256=hashlib.sha256(content).hexdigest(),
         spec=spec,
+        places={dotted(key): _where(path, key, line) for key, line in lines.items()},
     )
 
 
@@ -139,6 +141,21 @@ def _validate(raw: dict[str, Any]) -> tuple[StudySpec | None, list[Finding]]:
         return None, explain(error, raw)
 
 
+def _formula(raw: Mapping[str, Any]) -> list[Finding]:
+    model = raw.get("model")
+    text = model.get("formula") if isinstance(model, dict) else None
+    if not isinstance(text, str) or not text:
+        return []  # reported by pydantic
+    try:
+        check_formula(text)
+    except FormulaError as error:
+        return [
+            Finding(("model", "formula"), problem.found, problem.allowed, problem.advice)
+            for problem in error.problems
+        ]
+    return []
+
+
 def _data_path(raw: Mapping[str, Any], path: Path, *, allow_outside: bool) -> Path | Finding | None:
     data = raw.get("data")
     name = data.get("file") if isinstance(data, dict) else None
@@ -159,22 +176,8 @@ def _problems(path: Path, findings: Iterable[Finding], lines: Mapping[KeyPath, i
 
 
 def _where(path: Path, key: KeyPath, line: int | None) -> str:
-    parts = [path.name, f"line {line}" if line else "", _dotted(key)]
+    parts = [path.name, f"line {line}" if line else "", dotted(key)]
     return ", ".join(part for part in parts if part)
-
-
-def _dotted(key: KeyPath) -> str:
-    if len(key) > 1 and isinstance(key[1], int):
-        rest = _dotted(key[2:])
-        return f"{key[0]} no. {key[1] + 1}" + (f", {rest}" if rest else "")
-    text = ""
-    for step in key:
-        if isinstance(step, int):
-            text += f"[{step + 1}]"
-        else:
-            name = step if _BARE_KEY.fullmatch(step) else f'"{step}"'
-            text += f".{name}" if text else name
-    return text
 
 
 def _failure(path: Path, found: str, allowed: str, advice: str, *, line: int | None = None) -> StudyError:

@@ -119,6 +119,9 @@ class Study(BaseModel):
         Of the study file's bytes.
     spec : StudySpec
         What the file says.
+    places : dict
+        Where each key stands, for messages of later stages: ``"model.event"`` ->
+        ``"firmness.toml, line 18, model.event"``.
     """
 
     model_config = ConfigDict(extra="forbid", frozen=True)
@@ -128,6 +131,7 @@ class Study(BaseModel):
     data_path: Path
     sha256: str
     spec: StudySpec
+    places: dict[str, str] = {}
 
     @property
     def prior_sets(self) -> tuple[str, ...]:

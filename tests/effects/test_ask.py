@@ -51,8 +51,8 @@ def test_unknown_effects_are_all_named(design: Design) -> None:
         resolve_questions(specs, design)
 
     assert [problem.where for problem in caught.value.problems] == [
-        '[[question]] "liner[fim]", effect',
-        '[[question]] "weight", effect',
+        "question no. 1, effect",
+        "question no. 3, effect",
     ]
     assert caught.value.problems[0].allowed == "Intercept, liner[film], liner[foam], days"
     assert [p.advice for p in caught.value.problems] == ['write "liner[film]"', "use one of these names"]

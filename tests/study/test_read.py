@@ -353,3 +353,21 @@ def test_damaged_files_give_a_study_or_a_study_error(edits: list[tuple[int, int,
         path = write(Path(folder), text)
         with contextlib.suppress(StudyError):
             assert load_study(path).spec.model.family == "gaussian"
+
+
+def test_the_formula_is_checked_with_everything_else(folder: Path) -> None:
+    """Code in the formula is one problem among the others, at its line and with the place marked."""
+    found = problems(write(folder, GOOD.replace("~ liner", "~ liner.upper()") + "[oddity]\n"))
+
+    assert set(found) == {"line 6, model.formula", "line 8, oddity"}
+    assert "firmness ~ liner.upper()" in found["line 6, model.formula"]
+    assert "^" in found["line 6, model.formula"]
+
+
+def test_places_of_keys_are_kept_for_later_stages(folder: Path) -> None:
+    """A later stage can say at which line of which file a key stands."""
+    question = '[[question]]\nname = "q"\neffect = "liner[film]"\n'
+    study = load_study(write(folder, GOOD + question))
+
+    assert study.places["question no. 1, effect"] == "firmness.toml, line 10, question no. 1, effect"
+    assert study.places["model.family"] == "firmness.toml, line 7, model.family"
