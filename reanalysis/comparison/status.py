@@ -26,7 +26,7 @@ def judge(
     main_prior : str
         A failure under the main prior set fails the report; under another one it is a doubt.
     findings : sequence of Finding
-        What could be seen in the design; those that stop or warn are repeated here.
+        What could be seen in the design; those that stop are repeated here.
     """
     caveats = [
         *_of_posteriors(posteriors, main_prior),

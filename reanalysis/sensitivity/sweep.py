@@ -90,7 +90,7 @@ def sweep_question(
     points: list[SweepPoint] = []
     refits = 0
     for width in reversed(choose_widths(question, main)):
-        served = _best_weights(bases, width)
+        served: tuple[_Base, Weights | None] | None = _best_weights(bases, width)
         if served is None:
             fit = refit(_at_width(main.prior_set, question, width))
             refits += 1
