@@ -76,7 +76,7 @@ def test_failures_come_first(ols: Any) -> None:
 
 
 def test_a_shared_reason_is_said_once(ols: Any) -> None:
-    """Prior sets without a posterior for one reason share a sentence, which fails if the main one is there."""
+    """Prior sets without a posterior for one reason share a sentence; the main one makes it fail."""
     status = judge(ols, [missing("flat"), missing("weak"), missing("own")], "weak", ())
 
     assert status.caveats == (
