@@ -8,11 +8,11 @@ do not depend on which parameterisation the sampler used.
 from __future__ import annotations
 
 from functools import singledispatch
-from typing import Any, Protocol
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
-from scipy import special, stats
+from scipy import special
 
 from reanalysis.study.distributions import (
     Cauchy,
@@ -38,92 +38,6 @@ FloatArray = NDArray[np.float64]
 
 LOG_TWO = float(np.log(2.0))
 HALF_LOG_TWO_PI = 0.5 * float(np.log(2.0 * np.pi))
-
-
-class Frozen(Protocol):
-    """The part of a frozen scipy distribution that is used here and in pictures."""
-
-    def pdf(self, x: FloatArray) -> FloatArray:
-        """Density."""
-
-    def logpdf(self, x: FloatArray) -> FloatArray:
-        """Logarithm of the density."""
-
-    def ppf(self, q: float) -> float:
-        """Quantile."""
-
-
-@singledispatch
-def frozen(distribution: Distribution) -> Frozen:
-    """Return the scipy distribution with these parameters.
-
-    Parameters
-    ----------
-    distribution : Distribution
-        A proper one; `is_proper` tells.
-
-    Raises
-    ------
-    TypeError
-        For an improper distribution, which has no scipy counterpart.
-    """
-    raise TypeError(f"{distribution.dist} is improper")
-
-
-@frozen.register
-def _(distribution: Normal) -> Frozen:
-    return stats.norm(distribution.mean, distribution.sd)
-
-
-@frozen.register
-def _(distribution: StudentT) -> Frozen:
-    return stats.t(distribution.df, distribution.location, distribution.scale)
-
-
-@frozen.register
-def _(distribution: Cauchy) -> Frozen:
-    return stats.cauchy(distribution.location, distribution.scale)
-
-
-@frozen.register
-def _(distribution: Laplace) -> Frozen:
-    return stats.laplace(distribution.location, distribution.scale)
-
-
-@frozen.register
-def _(distribution: Uniform) -> Frozen:
-    return stats.uniform(distribution.low, distribution.high - distribution.low)
-
-
-@frozen.register
-def _(distribution: LogNormal) -> Frozen:
-    return stats.lognorm(distribution.sdlog, scale=np.exp(distribution.meanlog))
-
-
-@frozen.register
-def _(distribution: Gamma) -> Frozen:
-    return stats.gamma(distribution.shape, scale=1.0 / distribution.rate)
-
-
-@frozen.register
-def _(distribution: Exponential) -> Frozen:
-    return stats.expon(scale=1.0 / distribution.rate)
-
-
-@frozen.register
-def _(distribution: HalfNormal) -> Frozen:
-    return stats.halfnorm(scale=distribution.sd)
-
-
-@frozen.register
-def _(distribution: HalfCauchy) -> Frozen:
-    return stats.halfcauchy(scale=distribution.scale)
-
-
-@frozen.register
-def _(distribution: HalfStudentT) -> Frozen:
-    # scipy has no half t; the density is twice that of the t on the positive half line.
-    return stats.t(distribution.df, 0.0, distribution.scale)
 
 
 def is_proper(distribution: Distribution) -> bool:
@@ -160,7 +74,9 @@ def log_density(distribution: Distribution, x: FloatArray) -> FloatArray:
     if isinstance(distribution, Uniform):
         inside = (x >= distribution.low) & (x <= distribution.high)
         return np.where(inside, -np.log(distribution.high - distribution.low), -np.inf)
-    inside = x > 0.0
+    # Those with a logarithm in their density leave zero out.
+    open_at_zero = isinstance(distribution, Gamma | LogFlat | LogNormal)
+    inside = x > 0.0 if open_at_zero else x >= 0.0
     return np.where(inside, _positive_log_density(distribution, np.where(inside, x, 1.0)), -np.inf)
 
 
