@@ -62,7 +62,11 @@ def sample(bound: Any, structure: Structure, settings: SamplerSettings) -> RawDr
             save_warmup=False,
             progress_bar=False,
         )
-    except RuntimeError:  # what nutpie raises when every initial point fails
+    except RuntimeError as error:
+        # nutpie says alike that the density is nowhere finite, which is the study's, and that it
+        # could not be computed at all (code 1), which is a defect of ours.
+        if "initialization points failed" not in str(error) or "ErrorCode(1)" in str(error):
+            raise
         return None
     posterior, stats = trace["posterior"], trace["sample_stats"]
     coefficients = np.asarray(posterior[structure.term].values, dtype=np.float64)

@@ -47,3 +47,15 @@ def test_a_density_without_a_finite_value_has_no_draws(
 
     assert sample(store.get(structure, inputs).bind(inputs), structure, sampler) is None
     assert "panicked" not in capfd.readouterr().err
+
+
+@pytest.mark.mcmc
+def test_a_density_that_cannot_be_computed_is_a_defect(plant: Design, store: Any, sampler: Any) -> None:
+    """A matrix and an outcome of different lengths are no property of the data: the error is not hidden."""
+    prior_set = weak_priors(plant)
+    inputs = bound_inputs(plant, prior_set, choose_scaling(plant, prior_set))
+    structure = structure_of(plant, prior_set)
+    short = store.get(structure, inputs).bind(replace(inputs, response=inputs.response[:-1]))
+
+    with pytest.raises(RuntimeError, match="initialization points failed"):
+        sample(short, structure, sampler)
