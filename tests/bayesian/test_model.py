@@ -27,6 +27,8 @@ from reanalysis.errors import FitError
 from reanalysis.study import distributions as dist
 from reanalysis.study.spec import PriorSpec, QuestionSpec
 
+SIGMA = dist.HalfStudentT(df=4.0, scale=3.0)
+
 SLOPES: dict[str, tuple[dist.Distribution, dist.Distribution, dist.Distribution]] = {
     "whole line": (
         dist.Normal(mean=0.4, sd=2.0),
@@ -50,6 +52,15 @@ CASES = [
     ("poisson", "log", False, "bounded", "zero"),
 ]
 
+ALONE = [
+    ("gaussian", "1", dist.StudentT(df=5.0, location=90.0, scale=30.0)),
+    ("gaussian", "1", dist.Gamma(shape=4.0, rate=0.03)),
+    ("poisson", "1", dist.Uniform(low=-1.0, high=4.0)),
+    ("gaussian", "0 + x", dist.Laplace(location=3.0, scale=1.0)),
+    ("bernoulli", "0 + x", dist.LogNormal(meanlog=-4.0, sdlog=0.7)),
+]
+"""Models of one column, with its prior."""
+
 
 @pytest.fixture(scope="module")
 def mixed(modelled: Callable[..., Design]) -> Callable[..., Design]:
@@ -67,9 +78,8 @@ def mixed(modelled: Callable[..., Design]) -> Callable[..., Design]:
         }
     )
 
-    def make(family: str, link: str, exposed: bool) -> Design:
-        keys = {"exposure": "hours"} if exposed else {}
-        return modelled(frame, f"{family} ~ x + g", family, link=link, **keys)
+    def make(family: str, right: str = "x + g", **keys: Any) -> Design:
+        return modelled(frame, f"{family} ~ {right}", family, **keys)
 
     return make
 
@@ -83,14 +93,29 @@ def test_bambis_log_density_is_ours(
     Ours is evaluated on the data's scale, so scaling of data and priors, un-centring, offset and
     Jacobian-free transforms are all in the comparison.
     """
-    design = mixed(family, link, exposed)
-    auxiliary = dist.HalfStudentT(df=4.0, scale=3.0) if family == "gaussian" else None
+    design = mixed(family, link=link, **({"exposure": "hours"} if exposed else {}))
+    auxiliary = SIGMA if family == "gaussian" else None
     prior_set = priors(design, *SLOPES[slopes], auxiliary=auxiliary, intercept_at=at)
+
+    assert_same_density(design, prior_set)
+
+
+@pytest.mark.parametrize("family, right, prior", ALONE)
+def test_one_column_has_the_same_density_too(
+    mixed: Any, priors: Any, family: str, right: str, prior: dist.Distribution
+) -> None:
+    """So it is for an intercept alone and for a predictor without one, bounded or not."""
+    design = mixed(family, right)
+
+    assert_same_density(design, priors(design, prior, auxiliary=SIGMA if family == "gaussian" else None))
+
+
+def assert_same_density(design: Design, prior_set: PriorSet) -> None:
+    """Compare both log densities at five points."""
     scaling = choose_scaling(design, prior_set)
     inputs = bound_inputs(design, prior_set, scaling)
-    graph = build_model(
-        structure_of(design, prior_set), inputs, pytensor.shared(inputs.priors.ravel())
-    ).backend.model
+    structure = structure_of(design, prior_set)
+    graph = build_model(structure, inputs, pytensor.shared(inputs.priors.ravel())).backend.model
     density = graph.compile_logp(jacobian=False, mode="FAST_COMPILE")
     rng = np.random.default_rng(6)
     # Not far out: bambi keeps a probability within (eps, 1 - eps), and takes its logarithm afterwards.
@@ -104,8 +129,8 @@ def test_bambis_log_density_is_ours(
     )
     names = [variable.name for variable in graph.unobserved_value_vars]
     values = [dict(zip(names, backward(point), strict=True)) for point in points]
-    coefficients = np.array([[value["columns(c0)"] for value in values]])
-    sigma = np.array([[[value["sigma"]] for value in values]]) if auxiliary else np.empty((1, 5, 0))
+    coefficients = np.array([np.atleast_1d(value[structure.term]) for value in values])[None]
+    sigma = np.array([[value["sigma"]] for value in values] if prior_set.auxiliary else [[]] * 5)[None]
     draws = unscaled_draws(coefficients, sigma, scaling)
     ours = log_prior(draws, prior_set, design) + log_likelihood(draws, design)
 
