@@ -148,8 +148,8 @@ def seen_once(desk: Any) -> None:
 
 
 def many_levels(desk: Any) -> None:
-    """Five hundred levels, three rows each."""
-    rows = [[180 + y, f"tree{k % 500}"] for k, y in enumerate(noise(1, 1500))]
+    """A hundred levels, three rows each."""
+    rows = [[180 + y, f"tree{k % 100}"] for k, y in enumerate(noise(1, 300))]
     rewrite(desk, "grams,tree", rows, "grams ~ tree", "tree[tree1]")
 
 
@@ -159,7 +159,7 @@ AHEAD = {
     far_from_zero: ("warning: The condition number is", ["Centre or rescale"]),
     empty_cell: ("warning: No row has this combination", ["open", "bare", "Merge levels"]),
     seen_once: ("note: Only one row has bag = silk.", ["Merge rare levels"]),
-    many_levels: ("note: tree has 500 levels.", ["an identifier read as labels"]),
+    many_levels: ("note: tree has 100 levels.", ["an identifier read as labels"]),
 }
 
 

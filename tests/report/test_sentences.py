@@ -134,6 +134,7 @@ def test_headline_without_an_estimate() -> None:
     )
     assert text["frequentist"] == f"No estimate exists: {NO_ESTIMATE.reason}."
     assert text["agreement"].startswith("They cannot be compared")
+    assert text["prior"] == "This cannot be told: fewer than two prior sets gave a posterior."
 
 
 def test_headline_without_a_posterior() -> None:
@@ -166,6 +167,38 @@ def test_headline_warns_when_the_prior_decides() -> None:
         "Yes, for the direction: the probability that the effect is above zero goes from 0.87 (sceptical) "
         "to 0.99 (flat)."
     )
+
+
+@pytest.mark.parametrize(
+    ("weak", "sceptical", "sentence"),
+    [
+        (
+            (2.4, 1.0),
+            (0.8, 0.9),
+            "Yes, for the direction: the probability that the effect is above zero goes from",
+        ),
+        (
+            (4.4, 1.0),
+            (2.4, 1.0),
+            "Yes, for the size: the probability that the effect is more than ~ goes from",
+        ),
+        (
+            (4.4, 1.0),
+            (0.3, 0.9),
+            "Yes, for direction and size: the probability that the effect is more than ~",
+        ),
+        (
+            (2.4, 1.0),
+            (2.3, 1.0),
+            "No: the conclusions are the same under all 3 prior sets. The probability that",
+        ),
+    ],
+)
+def test_prior_in_words(weak: tuple[float, float], sceptical: tuple[float, float], sentence: str) -> None:
+    """The probability that is quoted is that of the claim which depends on the prior."""
+    compared = normal(ask(limit=2.0), weak, weak=weak, sceptical=sceptical)
+
+    assert plain_text(sentences.prior_reading(compared)).startswith(sentence.replace("~", f"2{THIN}N"))
 
 
 @pytest.mark.parametrize(
@@ -236,7 +269,7 @@ def test_ratio_of_a_logarithm(link: str, words: str) -> None:
 
     assert ("ratio" in text["headline"]) == bool(words)
     assert words in text["headline"]
-    assert (f"({words}, 0.27 to 0.60)" in text["frequentist"]) == bool(words)
+    assert (f" ({words}, 0.27 to 0.60)" in text["frequentist"]) == bool(words)
 
 
 def test_bars_are_explained() -> None:

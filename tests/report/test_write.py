@@ -126,10 +126,20 @@ def test_a_file_in_the_way_is_refused(tmp_path: Path, place: str, act: object) -
     """A file where the folder, or one above it, should be is named and left alone."""
     (tmp_path / "pears").write_bytes(b"data")
 
-    with pytest.raises(ReportError, match="pears"):
+    with pytest.raises(
+        ReportError, match=r"pears.*: (?:this is a file, and|.*Not a directory|.*File exists)"
+    ):
         act(tmp_path / place)
 
     assert tree(tmp_path) == {"pears": b"data"}
+
+
+def test_a_file_above_the_place_is_named(tmp_path: Path) -> None:
+    """It is the file in the way that is named, not the folder that cannot be made."""
+    (tmp_path / "out").write_bytes(b"data")
+
+    with pytest.raises(ReportError, match="out: this is a file, and a folder is to be made in it"):
+        check_place(tmp_path / "out" / "pears")
 
 
 def test_place_that_may_not_be_written(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
