@@ -25,6 +25,9 @@ PAGES = ("html", "pdf")
 
 PROVENANCE = "provenance.json"
 
+LITTER = frozenset({".DS_Store", "Thumbs.db", "desktop.ini"})
+"""What file managers leave in a folder that somebody has looked at."""
+
 
 def write_report(
     analysis: Analysis,
@@ -130,7 +133,7 @@ def _refuse_strangers(folder: Path, own: Collection[str]) -> None:
         if folder.exists():
             raise _refusal(folder, "this is a file, and the study's folder would take its place")
         return
-    strangers = sorted(path.name for path in folder.iterdir() if path.name not in own)
+    strangers = sorted(path.name for path in folder.iterdir() if path.name not in LITTER.union(own))
     if strangers:
         shown = ", ".join(strangers[:3]) + (" and others" if len(strangers) > 3 else "")
         raise _refusal(folder, f"the report would replace this folder, which also holds {shown}")

@@ -46,6 +46,17 @@ def test_folder_is_replaced_as_a_whole(tmp_path: Path) -> None:
     assert tree(tmp_path) == under("pears", NEW)
 
 
+def test_litter_of_a_file_manager_is_no_obstacle(tmp_path: Path) -> None:
+    """A report that somebody has looked at with a file manager is replaced all the same."""
+    write_folder(tmp_path / "pears", OLD)
+    (tmp_path / "pears" / ".DS_Store").touch()
+
+    check_place(tmp_path / "pears")
+    write_folder(tmp_path / "pears", NEW)
+
+    assert tree(tmp_path) == under("pears", NEW)
+
+
 FAILURES = {
     "full disk": OSError(errno.ENOSPC, "No space left on device"),
     "user stops": KeyboardInterrupt(),
