@@ -124,7 +124,12 @@ CASES: dict[str, tuple[Callable[[Any], None], list[str]]] = {
     ),
     "unknown effect": (
         study(("bag[paper]", "bag[silk]")),
-        ["pears.toml, line", "question no. 1, effect", '"bag[silk]"', "Intercept, bag[paper], bag[net], weeks"],
+        [
+            "pears.toml, line",
+            "question no. 1, effect",
+            '"bag[silk]"',
+            "Intercept, bag[paper], bag[net], weeks",
+        ],
     ),
     "binary study file": (
         without_study(lambda path: path.write_bytes(b"\x89PNG\r\n\x00")),
