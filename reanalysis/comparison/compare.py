@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from reanalysis.comparison.conclude import conclude_frequentist, conclude_posterior
+from reanalysis.comparison.conclude import conclude_frequentist, conclude_posterior, side_of
 from reanalysis.comparison.result import (
     Agreement,
     Compared,
@@ -14,6 +14,7 @@ from reanalysis.comparison.result import (
     NoConclusion,
     PriorReading,
     Reason,
+    Side,
     Standing,
 )
 from reanalysis.effects.result import (
@@ -72,7 +73,7 @@ def agreement(frequentist: ConclusionResult, bayesian: ConclusionResult) -> Agre
     """Classify two conclusions by the claims on which they stand alike."""
     if isinstance(frequentist, NoConclusion) or isinstance(bayesian, NoConclusion):
         return "cannot be compared"
-    direction = frequentist.direction == bayesian.direction
+    direction = _direction(frequentist) == _direction(bayesian)
     size = frequentist.size == bayesian.size
     if direction and size:
         return "agree"
@@ -101,7 +102,7 @@ def reason(
         return "no posterior"
     if conclusion == main.conclusion:
         return "none"
-    if flat is not None and flat.conclusion == conclusion and flat.prior_set != main.prior_set:
+    if flat is not None and flat.conclusion == conclusion:  # so it is not the main one
         return "prior information"
     if _at_the_same_bar(question, frequentist) == main.conclusion:
         return "different bars"
@@ -111,19 +112,25 @@ def reason(
 def dependence(readings: Sequence[PriorReading]) -> Dependence:
     """Name the conclusions that are not the same under every prior set that gave an answer."""
     conclusions = [reading.conclusion for reading in readings if isinstance(reading.conclusion, Conclusion)]
-    direction = len({conclusion.direction for conclusion in conclusions}) > 1
+    direction = len({_direction(conclusion) for conclusion in conclusions}) > 1
     size = len({conclusion.size for conclusion in conclusions}) > 1
     if direction and size:
         return "both"
     return "direction" if direction else "size" if size else "none"
 
 
+def _direction(conclusion: Conclusion) -> tuple[Standing, Side]:
+    return conclusion.direction, conclusion.side
+
+
 def _at_the_same_bar(question: Question, answer: FrequentistAnswer) -> Conclusion:
     bar = 1.0 - question.act_when
     positive = answer.p / 2.0 if answer.estimate > 0.0 else 1.0 - answer.p / 2.0
     if question.direction == "either":
-        found = min(positive, 1.0 - positive) <= bar
-        return Conclusion("supported" if found else "open", _size_at_bar(answer, bar))
+        size = _size_at_bar(answer, bar)
+        if min(positive, 1.0 - positive) <= bar:
+            return Conclusion("supported", size, side_of(answer.estimate))
+        return Conclusion("open", size)
     tail = positive if question.direction == "greater" else 1.0 - positive
     size = None if answer.size is None else _standing(answer.size.p_beyond, bar)
     return Conclusion(_standing(tail, bar), size)
