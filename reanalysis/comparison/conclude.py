@@ -10,7 +10,7 @@ opposite has it.
 
 from __future__ import annotations
 
-from reanalysis.comparison.result import Conclusion, ConclusionResult, NoConclusion, Standing
+from reanalysis.comparison.result import Conclusion, ConclusionResult, NoConclusion, Side, Standing
 from reanalysis.effects.result import (
     FrequentistAnswer,
     FrequentistResult,
@@ -27,21 +27,28 @@ def conclude_frequentist(question: Question, answer: FrequentistResult) -> Concl
     if isinstance(answer, NoFrequentistAnswer):
         return NoConclusion(answer.reason)
     low, high = _towards(question, answer)
-    if question.direction == "either":
-        direction: Standing = "supported" if low > 0.0 or high < 0.0 else "open"
-    else:
-        direction = _exceeds(low, high, 0.0)
-    return Conclusion(direction, _size(question, low, high))
+    size = _size(question, low, high)
+    if question.direction != "either":
+        return Conclusion(_exceeds(low, high, 0.0), size)
+    if low > 0.0 or high < 0.0:
+        return Conclusion("supported", size, side_of(low))
+    return Conclusion("open", size)
 
 
 def conclude_posterior(question: Question, answer: PosteriorResultForQuestion) -> ConclusionResult:
     """Conclude from posterior probabilities."""
     if isinstance(answer, NoPosteriorAnswer):
         return NoConclusion(answer.reason)
-    return Conclusion(
-        _reached(answer.direction, question.act_when),
-        None if answer.beyond is None else _reached(answer.beyond, question.act_when),
-    )
+    direction = _reached(answer.direction, question.act_when)
+    size = None if answer.beyond is None else _reached(answer.beyond, question.act_when)
+    if question.direction == "either" and direction == "supported":
+        return Conclusion(direction, size, side_of(answer.median))
+    return Conclusion(direction, size)
+
+
+def side_of(effect: float) -> Side:
+    """The side of zero that an effect is on."""
+    return "below" if effect < 0.0 else "above"
 
 
 def _towards(question: Question, answer: FrequentistAnswer) -> tuple[float, float]:

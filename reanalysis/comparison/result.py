@@ -11,6 +11,9 @@ from reanalysis.sensitivity.result import PowerScaling, SweepResult
 Standing = Literal["supported", "contradicted", "open"]
 """What an analysis says about a claim."""
 
+Side = Literal["above", "below", "asked"]
+"""Where an effect that was sought either way has been found."""
+
 Agreement = Literal["agree", "differ on direction", "differ on size", "differ on both", "cannot be compared"]
 
 Reason = Literal[
@@ -32,10 +35,14 @@ class Conclusion:
         Standing of "the effect has the asked sign" (``either``: "there is an effect").
     size : str or None
         Standing of "it is larger than what matters"; None when no such size was stated.
+    side : str
+        For ``either``: the side of zero that a supported effect is on. ``asked`` otherwise: the
+        question says it, or no effect is established.
     """
 
     direction: Standing
     size: Standing | None
+    side: Side = "asked"
 
     @property
     def act(self) -> bool:

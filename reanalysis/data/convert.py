@@ -201,7 +201,7 @@ def _numbers_as_text(name: str, table: RawTable, labels: _Labels, plain: set[int
     )
     return Problem(
         f"{table.file}, column {name}",
-        f"most cells are numbers, but {_rows(count)} are not: {shown}",
+        f"most cells are numbers, but {_rows(count)} {'is' if count == 1 else 'are'} not: {shown}",
         "numbers with a decimal point and nothing else, or labels",
         "look for decimal commas, thousands separators, units and signs for missing values; name the last in "
         '`missing_values` of [data], such as missing_values = ["", "NA", "-"]; if the column is a factor, '

@@ -197,7 +197,7 @@ def _refuse_too_many(columns: int, rows: int) -> None:
         raise DesignError(
             Problem(
                 where="model.formula",
-                found=f"the model has {columns} columns or more and the data {rows} complete rows",
+                found=f"the model has {columns} columns or more; complete rows: {rows}",
                 allowed=f"at least {columns + 1} rows for {columns} columns",
                 advice="take terms out, or merge the levels of a factor that has many",
             )

@@ -46,11 +46,19 @@ def posterior_density(context: Context, compared: Compared, fit: PosteriorFit) -
     )
     data = density.density_data(question, posterior, compared.frequentist, _axis(context, compared))
     probability = answer.direction if answer.beyond is None else answer.beyond
-    dark = "the asked direction" if answer.beyond is None else "effects beyond what matters"
+    dark = (
+        f"effects {sign_words(question, answer)}" if answer.beyond is None else "effects beyond what matters"
+    )
+    beneath = (
+        f"; the square and line beneath are the frequentist estimate and its {context.level} "
+        "confidence interval"
+        if isinstance(compared.frequentist, FrequentistAnswer)
+        else "; there is no frequentist estimate to set beneath it"
+    )
+    share = numbers.probability(probability.value, probability.mcse)
     caption = (
-        f"{question.name}: posterior under the {answer.prior_set} prior set. The dark part, "
-        f"{numbers.probability(probability.value, probability.mcse)} of the whole, is {dark}; the square "
-        f"and line beneath are the frequentist estimate and its {context.level} confidence interval."
+        f"{question.name}: posterior under the {answer.prior_set} prior set. The dark part, {share} of the "
+        f"whole, is {dark}{beneath}."
     )
     return Figure(context.numbering.figure(), caption, caption, density.draw_density(data))
 
@@ -218,7 +226,7 @@ def _spread_of_medians(medians: Sequence[float], decimals: int, unit: str) -> st
 def _tipping(compared: Compared, tipping: TippingResult) -> str:
     question, main = compared.question, compared.main.answer
     if tipping.claim == "direction":
-        sign = sign_words(question, main) if isinstance(main, PosteriorAnswer) else "in the asked direction"
+        sign = sign_words(question, main) if isinstance(main, PosteriorAnswer) else "of the asked sign"
         claim = f"The probability that the effect is {sign}"
     else:
         claim = f"The probability that it exceeds {limit_words(question)}"

@@ -217,8 +217,10 @@ def _posterior_answer(
 
 def _conclusion(conclusion: ConclusionResult) -> schema.ConclusionPart:
     if isinstance(conclusion, Conclusion):
-        return schema.ConclusionPart(direction=conclusion.direction, size=conclusion.size)
-    return schema.ConclusionPart(direction="open", size=None)
+        return schema.ConclusionPart(
+            direction=conclusion.direction, size=conclusion.size, side=conclusion.side
+        )
+    return schema.ConclusionPart(direction="open", size=None, side="asked")
 
 
 def _sensitivity(compared: Compared) -> schema.SensitivityPart:

@@ -141,6 +141,7 @@ class ConclusionPart(_Part):
 
     direction: str
     size: str | None
+    side: str
 
 
 class FrequentistAnswerPart(_Part):

@@ -30,12 +30,19 @@ def headline(context: Context, compared: Compared) -> str:
         return "This question cannot be answered here: there is no trustworthy posterior."
     size = _about(context, compared, main.answer)
     if isinstance(frequentist, NoConclusion):
-        return f"The data alone give no estimate; with the {main.prior_set} prior it is {size}."
-    if compared.agreement == "agree":
+        sentence = _without_estimate(compared, main.conclusion, size)
+    elif compared.agreement == "agree":
         sentence = _agreed(compared.question, main.conclusion, size)
     else:
         sentence = _parted(compared.question, main.conclusion, frequentist)
     return sentence if compared.dependence == "none" else f"{sentence} The answer depends on the prior."
+
+
+def _without_estimate(compared: Compared, conclusion: Conclusion, size: str) -> str:
+    prior = compared.main.prior_set
+    if conclusion.direction == "open":
+        return f"The data alone give no estimate, and with the {prior} prior the answer stays open."
+    return f"The data alone give no estimate; with the {prior} prior there is {size}."
 
 
 def _about(context: Context, compared: Compared, answer: PosteriorAnswer) -> str:
@@ -70,7 +77,13 @@ def _agreed(question: Question, conclusion: Conclusion, size: str) -> str:
             return f"These data do not settle whether there is {asked_words(question)}."
 
 
+_BY_SIDE = {"above": "an increase", "below": "a decrease"}
+
+
 def _parted(question: Question, bayesian: Conclusion, frequentist: Conclusion) -> str:
+    if bayesian.side != frequentist.side and "asked" not in (bayesian.side, frequentist.side):
+        ours, theirs = (_BY_SIDE[conclusion.side] for conclusion in (bayesian, frequentist))
+        return f"The two analyses part: the Bayesian one supports {ours}, the frequentist one {theirs}."
     if bayesian.direction != frequentist.direction:
         claim, ours, theirs = asked_words(question), bayesian.direction, frequentist.direction
     else:
@@ -180,12 +193,19 @@ def _deciding(
             if isinstance(answer, PosteriorAnswer) and answer.beyond is not None
         ]
         return f"that the effect {exceeds_words(question)}", beyond
-    direction = [
-        (reading, answer.direction) for reading, answer in pairs if isinstance(answer, PosteriorAnswer)
-    ]
+    answers = [(reading, answer) for reading, answer in pairs if isinstance(answer, PosteriorAnswer)]
     main = compared.main.answer
-    words = sign_words(question, main) if isinstance(main, PosteriorAnswer) else "in the asked direction"
-    return f"that the effect is {words}", direction
+    words = sign_words(question, main if isinstance(main, PosteriorAnswer) else answers[0][1])
+    return f"that the effect is {words}", [
+        (reading, _of_sign(question, answer, words)) for reading, answer in answers
+    ]
+
+
+def _of_sign(question: Question, answer: PosteriorAnswer, words: str) -> TailProbability:
+    """The probability of one sign, also where the other one is the more probable."""
+    if sign_words(question, answer) == words:
+        return answer.direction
+    return TailProbability(1.0 - answer.direction.value, answer.direction.mcse)
 
 
 def agreement_reading(context: Context, compared: Compared) -> str:

@@ -18,6 +18,7 @@ class SweepPoint:
     width : float
         Standard deviation of the normal prior of the effect, centred at no effect, in its unit.
     prob_direction : float
+        Of the asked sign; for ``either``, of the sign that the main posterior's median has.
     prob_beyond : float or None
         None when no smallest effect that matters was stated.
     median, low, high : float

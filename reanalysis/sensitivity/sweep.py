@@ -87,6 +87,7 @@ def sweep_question(
         return NoSweep(question.name, f"there is no posterior under the main prior set: {main.reason}")
     fits = [fit for fit in (main, *others) if _covers(fit.prior_set, main.prior_set, question.column)]
     bases = [_base(fit, main.prior_set, question, design) for fit in fits]
+    sided = _sided(question, main)
     points: list[SweepPoint] = []
     refits = 0
     for width in reversed(choose_widths(question, main)):
@@ -99,7 +100,7 @@ def sweep_question(
             base = _base(fit, main.prior_set, question, design)
             bases.append(base)
             served = (base, None)
-        points.append(_point(question, main.level, width, served))
+        points.append(_point(question, sided, main.level, width, served))
     if not points:
         return NoSweep(question.name, "the model could not be fitted at any width")
     points.reverse()
@@ -170,20 +171,25 @@ def _best_weights(bases: list[_Base], width: float) -> tuple[_Base, Weights] | N
     return (bases[best], weights) if _trustworthy(weights) else None
 
 
+def _sided(question: Question, main: PosteriorFit) -> Question:
+    """Give a question about either sign the one that the main posterior's median has, at every width."""
+    if question.direction != "either":
+        return question
+    median = main.coefficients[question.column].median
+    return replace(question, direction="less" if median < 0.0 else "greater")
+
+
 def _point(
-    question: Question, level: float, width: float, source: tuple[_Base, Weights | None]
+    question: Question, sided: Question, level: float, width: float, source: tuple[_Base, Weights | None]
 ) -> SweepPoint:
     base, weights = source
     draws = base.effect
     shares = np.full(draws.size, 1.0 / draws.size) if weights is None else weights.values
     tail = (1.0 - level) / 2.0
     low, median, high = weighted_quantiles(draws, shares, np.array([tail, 0.5, 1.0 - tail]))
-    towards = float(shares @ in_direction(question, draws))
-    if question.direction == "either":
-        towards = max(towards, 1.0 - towards)
     return SweepPoint(
         width=float(width),
-        prob_direction=towards,
+        prob_direction=float(shares @ in_direction(sided, draws)),
         prob_beyond=None if question.matters_beyond is None else float(shares @ beyond(question, draws)),
         median=float(median),
         low=float(low),

@@ -82,7 +82,7 @@ CONSTANT = HEAD + "".join(f"180,{bag},{week}\n" for week in range(9) for bag in 
 CASES: dict[str, tuple[Callable[[Any], None], list[str]]] = {
     "empty file": (data(""), ["pears.csv", "the file is empty"]),
     "header only": (data(HEAD), ["pears.csv", "no data", "one row or more"]),
-    "one row": (data(HEAD + "180,none,3\n"), ["model.formula", "1 complete rows", "at least 3 rows"]),
+    "one row": (data(HEAD + "180,none,3\n"), ["model.formula", "complete rows: 1", "at least 3 rows"]),
     "no complete row": (data(HEAD + ",none,3\n170,,4\n"), ["none of the 2 rows", "grams in 1, bag in 1"]),
     "constant response": (data(CONSTANT), ["grams", "180 in every row", "an outcome that varies"]),
     "text among numbers": (
@@ -97,7 +97,7 @@ CASES: dict[str, tuple[Callable[[Any], None], list[str]]] = {
         data(HEAD + "1" * 10_000_000 + ",none,3\n"),
         ["pears.csv, line 2", "more than 1,000,000 characters"],
     ),
-    "500 levels in 500 rows": (too_many_levels, ["501 columns", "500 complete rows", "merge the levels"]),
+    "500 levels in 500 rows": (too_many_levels, ["501 columns", "complete rows: 500", "merge the levels"]),
     "gzip bomb": (renamed("pears.csv.gz", bomb_gz()), ["pears.csv.gz", "unpacks to more than 200 times"]),
     "workbook bomb": (renamed("pears.xlsx", bomb_xlsx()), ["pears.xlsx", "unpacks to more than 200 times"]),
     "no workbook": (

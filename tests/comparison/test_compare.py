@@ -36,6 +36,14 @@ def test_agreement_goes_claim_by_claim(one: tuple[Any, Any], other: tuple[Any, A
     assert agreement(Conclusion(*other), Conclusion(*one)) == want
 
 
+def test_opposite_sides_are_no_agreement() -> None:
+    """Asked for a difference either way, an increase and a decrease are two answers."""
+    above, below = (Conclusion("supported", None, side) for side in ("above", "below"))
+
+    assert agreement(above, below) == "differ on direction"
+    assert agreement(above, above) == "agree"
+
+
 def test_nothing_cannot_be_compared() -> None:
     """A missing conclusion on either side, or on both, is no disagreement."""
     some = Conclusion("open", None)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 import pytest
@@ -65,8 +66,11 @@ def test_an_interval_concludes(
     """The whole interval must agree with a claim to support it, and speak against it to contradict it."""
     answer = interval(*limits)
 
-    assert conclude_frequentist(ask(direction), answer) == Conclusion(towards, size)
-    assert conclude_frequentist(ask(direction, None), answer) == Conclusion(towards, None)
+    found = direction == "either" and towards == "supported"
+    side = ("below" if limits[0] < 0.0 else "above") if found else "asked"
+
+    assert conclude_frequentist(ask(direction), answer) == Conclusion(towards, size, side)
+    assert conclude_frequentist(ask(direction, None), answer) == Conclusion(towards, None, side)
 
 
 @pytest.mark.parametrize(
@@ -84,7 +88,7 @@ def test_a_probability_concludes(ask: Any, probability: float, standing: str) ->
 
 @given(low=st.floats(-9.0, 9.0), width=st.floats(0.01, 9.0))
 def test_conclusions_mirror(low: float, width: float) -> None:
-    """With every sign changed, less concludes what greater concluded, and either the same as before."""
+    """With every sign changed, less concludes what greater concluded, and either the other side."""
 
     def concluded(direction: str, limits: tuple[float, float]) -> Any:
         question = Question("q", "x", "N", 0, direction, 2.0, 0.95)
@@ -92,7 +96,9 @@ def test_conclusions_mirror(low: float, width: float) -> None:
 
     here, there = (low, low + width), (-low - width, -low)
     assert concluded("greater", here) == concluded("less", there)
-    assert concluded("either", here) == concluded("either", there)
+    mirrored = concluded("either", there)
+    other = {"above": "below", "below": "above", "asked": "asked"}[mirrored.side]
+    assert concluded("either", here) == replace(mirrored, side=other)
 
 
 def test_no_answer_concludes_nothing(ask: Any) -> None:
@@ -107,3 +113,13 @@ def test_acting_needs_the_size_where_one_is_stated() -> None:
     assert not Conclusion("supported", "open").act
     assert Conclusion("supported", None).act
     assert not Conclusion("contradicted", None).act
+
+
+def test_a_found_difference_is_on_the_side_of_its_median(ask: Any) -> None:
+    """A difference found either way has a side, and the side is part of the conclusion."""
+    below = replace(probabilities(0.99, 0.5), median=-3.0)
+    above = replace(probabilities(0.99, 0.5), median=3.0)
+
+    assert conclude_posterior(ask("either"), below) == Conclusion("supported", "open", "below")
+    assert conclude_posterior(ask("either"), above) == Conclusion("supported", "open", "above")
+    assert conclude_posterior(ask("greater"), above) == Conclusion("supported", "open", "asked")

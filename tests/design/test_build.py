@@ -148,14 +148,14 @@ def test_too_few_rows(design_of, apples):
 def test_one_row(design_of, apples):
     """A single row is refused, whatever the model."""
     found = problems_of(lambda: design_of(apples[:1], "firmness ~ liner + days"))
-    assert "1 complete rows" in found["model.formula"]
+    assert "complete rows: 1" in found["model.formula"]
 
 
 def test_more_levels_than_rows_allow(design_of):
     """A factor with a level for each row is refused before its matrix is built."""
     frame = pd.DataFrame({"y": np.arange(500.0), "who": [f"p{i}" for i in range(500)]})
     found = problems_of(lambda: design_of(frame, "y ~ who"))
-    assert "the model has 500 columns or more and the data 500 complete rows" in found["model.formula"]
+    assert "the model has 500 columns or more; complete rows: 500" in found["model.formula"]
 
 
 @pytest.mark.parametrize(

@@ -130,11 +130,21 @@ def test_headline_without_an_estimate() -> None:
     text = page(compared, context("logit"))
 
     assert text["headline"].startswith(
-        "The data alone give no estimate; with the weak prior it is a decrease of about 2.3"
+        "The data alone give no estimate; with the weak prior there is a decrease of about 2.3"
     )
     assert text["frequentist"] == f"No estimate exists: {NO_ESTIMATE.reason}."
     assert text["agreement"].startswith("They cannot be compared")
     assert text["prior"] == "This cannot be told: fewer than two prior sets gave a posterior."
+
+
+def test_headline_without_an_estimate_claims_no_more_than_the_posterior() -> None:
+    """A posterior that establishes nothing is not reported as an effect."""
+    question = ask()
+    compared = pair(question, NO_ESTIMATE, posterior(question, "weak", 0.1, 2.0))
+
+    headline = page(compared, context())["headline"]
+
+    assert headline == ("The data alone give no estimate, and with the weak prior the answer stays open.")
 
 
 def test_headline_without_a_posterior() -> None:

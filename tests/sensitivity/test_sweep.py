@@ -11,12 +11,12 @@ import pytest
 from scipy import stats
 
 from reanalysis.bayesian.priors import flat_priors, weak_priors
-from reanalysis.bayesian.result import NoPosterior, PosteriorFit, PosteriorResult, PriorSet
+from reanalysis.bayesian.result import NoPosterior, ParameterPrior, PosteriorFit, PosteriorResult, PriorSet
 from reanalysis.effects.result import Question
 from reanalysis.sensitivity.result import NoSweep, NoTipping, Sweep, TippingPrior
 from reanalysis.sensitivity.reweight import pareto_k_limit
-from reanalysis.sensitivity.sweep import _at_width, choose_widths, sweep_question
-from reanalysis.study.distributions import HalfNormal, Normal
+from reanalysis.sensitivity.sweep import _at_width, _covers, choose_widths, sweep_question
+from reanalysis.study.distributions import Distribution, HalfNormal, Normal, StudentT
 
 
 def question(direction: str = "greater", limit: float | None = 0.5, act_when: float = 0.95) -> Question:
@@ -138,6 +138,36 @@ def test_sweeps_go_by_the_asked_direction(world: Any, one_column: Any, direction
         beyond = exact.cdf(-0.5) + (exact.sf(0.5) if direction == "either" else 0.0)
         assert point.prob_direction == pytest.approx(exact.cdf(0.0), abs=0.02)
         assert point.prob_beyond == pytest.approx(beyond, abs=0.02)
+
+
+def test_either_direction_keeps_its_sign_over_the_sweep(truth: Any, one_column: Any) -> None:
+    """The sign is that of the main posterior's median, also where narrower or wider priors turn it."""
+    leaning = truth.fit(Normal(mean=-0.8, sd=0.4))
+
+    sweep = sweep_question(question("either", None), leaning, (), one_column, Refits(truth))
+
+    assert leaning.coefficients[0].median < 0.0
+    assert "reweighted" in {point.method for point in sweep.points}
+    for point in sweep.points:
+        assert point.prob_direction == pytest.approx(truth.posterior(point.width).cdf(0.0), abs=0.04)
+
+
+def set_of(effect: Distribution, other: Distribution, at: str = "centre") -> PriorSet:
+    """Priors of a questioned effect and of another coefficient."""
+    return PriorSet("s", "", at, (ParameterPrior("x", effect, ""), ParameterPrior("z", other, "")), ())
+
+
+def test_only_draws_that_cover_the_target_serve() -> None:
+    """A bounded prior disqualifies for its own effect, and elsewhere unless the main set has the same."""
+    normal, half = Normal(sd=1.0), HalfNormal(sd=1.0)
+    main, bounded = set_of(normal, normal), set_of(normal, half)
+
+    assert _covers(set_of(Normal(sd=9.0), StudentT(df=3.0, scale=2.0)), main, 0)
+    assert not _covers(bounded, main, 0)
+    assert _covers(bounded, bounded, 0)
+    assert not _covers(bounded, bounded, 1)
+    assert not _covers(set_of(normal, HalfNormal(sd=2.0)), bounded, 0)
+    assert not _covers(set_of(normal, half, "zero"), bounded, 0)
 
 
 def test_draws_of_a_positive_prior_serve_no_normal_one(truth: Any, one_column: Any) -> None:

@@ -1,0 +1,1 @@
+"""Timings of the package beside other ways to do the same work."""
