@@ -280,9 +280,9 @@ def test_unknown_names_are_all_refused_with_the_closest(plant: Design, spector: 
         resolve_prior_sets(study(typo, aux), plant)
 
     assert [problem.where for problem in caught.value.problems] == [
-        '[[prior]] "one", terms."group[trtt]"',
-        '[[prior]] "one", terms."zzz"',
-        '[[prior]] "two", auxiliary."sigmma"',
+        'prior no. 1, terms."group[trtt]"',
+        "prior no. 1, terms.zzz",
+        "prior no. 2, auxiliary.sigmma",
     ]
     assert [problem.advice for problem in caught.value.problems] == [
         'write "group[trt]"',
