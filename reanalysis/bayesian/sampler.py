@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 import nutpie
+import pyarrow  # type: ignore[import-untyped]
 from numpy.typing import NDArray
 
 from reanalysis.bayesian.model import Structure
@@ -61,6 +63,7 @@ def sample(bound: Any, structure: Structure, settings: SamplerSettings) -> RawDr
             adaptation="low_rank" if settings.low_rank else "diag",
             save_warmup=False,
             progress_bar=False,
+            return_raw_trace=True,
         )
     except RuntimeError as error:
         # nutpie says alike that the density is nowhere finite, which is the study's, and that it
@@ -68,18 +71,24 @@ def sample(bound: Any, structure: Structure, settings: SamplerSettings) -> RawDr
         if "initialization points failed" not in str(error) or "ErrorCode(1)" in str(error):
             raise
         return None
-    posterior, stats = trace["posterior"], trace["sample_stats"]
-    coefficients = np.asarray(posterior[structure.term].values, dtype=np.float64)
-    shape = coefficients.shape[:2]
+    # The labelled data sets that nutpie would build of twenty statistics cost more than the sampling.
+    draws, stats = trace.get_arrow_trace()
+    coefficients = _kept(draws, structure.term, settings.draws)
+    shape = (settings.chains, settings.draws)
     auxiliary = structure.family.auxiliary
-    extra = (
-        np.empty((*shape, 0))
-        if auxiliary is None
-        else np.asarray(posterior[auxiliary].values, dtype=np.float64).reshape(*shape, 1)
-    )
     return RawDraws(
         coefficients.reshape(*shape, structure.columns),
-        extra,
-        np.asarray(stats["diverging"].values, dtype=np.bool_),
-        np.asarray(stats["energy"].values, dtype=np.float64),
+        np.empty((*shape, 0)) if auxiliary is None else _kept(draws, auxiliary, settings.draws),
+        _kept(stats, "diverging", settings.draws)[..., 0].astype(np.bool_),
+        _kept(stats, "energy", settings.draws)[..., 0],
     )
+
+
+def _kept(batches: Sequence[Any], name: str, count: int) -> FloatArray:
+    """Read the last `count` rows of a column in the Arrow table of each chain, shape (chains, count, m)."""
+    arrays = []
+    for batch in batches:
+        column = pyarrow.array(batch.column(name))
+        values = column.flatten() if pyarrow.types.is_large_list(column.type) else column
+        arrays.append(values.to_numpy(zero_copy_only=False).reshape(batch.num_rows, -1)[-count:])
+    return np.stack(arrays).astype(np.float64)
