@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 import numpy as np
@@ -51,8 +51,29 @@ def sample(bound: Any, structure: Structure, settings: SamplerSettings) -> RawDr
     RawDraws or None
         None when no chain could be started: the log posterior has no finite value near its start.
     """
+    # One chain first: when no start is found, nutpie leaves the threads of further chains running on
+    # memory that Python frees, and the process dies of it, now or when it ends.
+    if _run(bound, replace(settings, draws=1, tune=1, chains=1, cores=1)) is None:
+        return None
+    trace = _run(bound, settings)
+    if trace is None:
+        return None
+    # The labelled data sets that nutpie would build of twenty statistics cost more than the sampling.
+    draws, stats = trace.get_arrow_trace()
+    coefficients = _kept(draws, structure.term, settings.draws)
+    shape = (settings.chains, settings.draws)
+    auxiliary = structure.family.auxiliary
+    return RawDraws(
+        coefficients.reshape(*shape, structure.columns),
+        np.empty((*shape, 0)) if auxiliary is None else _kept(draws, auxiliary, settings.draws),
+        _kept(stats, "diverging", settings.draws)[..., 0].astype(np.bool_),
+        _kept(stats, "energy", settings.draws)[..., 0],
+    )
+
+
+def _run(bound: Any, settings: SamplerSettings) -> Any:
     try:
-        trace = nutpie.sample(
+        return nutpie.sample(
             bound,
             draws=settings.draws,
             tune=settings.tune,
@@ -71,17 +92,6 @@ def sample(bound: Any, structure: Structure, settings: SamplerSettings) -> RawDr
         if "initialization points failed" not in str(error) or "ErrorCode(1)" in str(error):
             raise
         return None
-    # The labelled data sets that nutpie would build of twenty statistics cost more than the sampling.
-    draws, stats = trace.get_arrow_trace()
-    coefficients = _kept(draws, structure.term, settings.draws)
-    shape = (settings.chains, settings.draws)
-    auxiliary = structure.family.auxiliary
-    return RawDraws(
-        coefficients.reshape(*shape, structure.columns),
-        np.empty((*shape, 0)) if auxiliary is None else _kept(draws, auxiliary, settings.draws),
-        _kept(stats, "diverging", settings.draws)[..., 0].astype(np.bool_),
-        _kept(stats, "energy", settings.draws)[..., 0],
-    )
 
 
 def _kept(batches: Sequence[Any], name: str, count: int) -> FloatArray:
