@@ -86,7 +86,7 @@ class ComputationSpec(_Section):
     draws: Annotated[int, Field(ge=250, le=50_000)] = 2000
     tune: Annotated[int, Field(ge=200, le=50_000)] = 500
     chains: Annotated[int, Field(ge=2, le=16)] = 4
-    target_accept: Annotated[float, Field(ge=0.6, le=0.999)] = 0.9
+    target_accept: Annotated[float, Field(ge=0.6, le=0.999)] = 0.85
 
 
 class StudySpec(_Section):
