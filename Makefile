@@ -19,7 +19,7 @@ help:
 	@echo "make report   reports of the sample studies, in $(OUT)/"
 	@echo "make test     all tests"
 	@echo "make check    lint, format, types, layers and sizes"
-	@echo "make bench    time a batch of studies against the plain loop"
+	@echo "make bench    time whole commands, and many studies against the plain loop"
 	@echo "make lock     resolve requirements.lock anew from pyproject.toml (needs uv)"
 	@echo "make clean    remove .venv, reports and caches"
 
@@ -40,6 +40,7 @@ check: $(STAMP)
 	$(RUN) pytest -q tests/test_layers.py tests/test_sizes.py
 
 bench: $(STAMP)
+	$(RUN) benchmarks.commands
 	$(RUN) benchmarks.throughput
 
 # Versions come from the registry that your client is set up for; no address is written into the lock.

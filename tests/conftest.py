@@ -75,8 +75,8 @@ def posterior_of(store: Any, sampler: Any) -> Callable[..., Any]:
 
 
 @pytest.fixture(scope="session")
-def modelled() -> Callable[..., Any]:
-    """Give a function that builds the design of a frame, a formula, a family and further model keys."""
+def design_of() -> Callable[..., Any]:
+    """Give a function that builds the design of a frame, a formula, a family and further keys."""
     import pandas as pd
 
     from reanalysis.data.dataset import Dataset
@@ -84,15 +84,22 @@ def modelled() -> Callable[..., Any]:
     from reanalysis.study.spec import StudySpec
 
     def as_data(column: pd.Series) -> pd.Series | pd.Categorical:
+        # Numbers as float64 and text as ordered factors, as the data room hands them over.
         if isinstance(column.dtype, pd.CategoricalDtype):
             return column
-        return pd.Categorical(column, ordered=True) if pd.api.types.is_string_dtype(column) else column * 1.0
+        if pd.api.types.is_string_dtype(column):
+            return pd.Categorical(column, ordered=True)
+        return column.astype(float)
 
     def make(frame: pd.DataFrame, formula: str, family: str = "gaussian", **keys: Any) -> Any:
+        data = {key: keys.pop(key) for key in ("units", "missing") if key in keys}
         model = {"formula": formula, "family": family, **keys}
-        spec = StudySpec.model_validate({"title": "A test", "data": {"file": "x.csv"}, "model": model})
+        spec = StudySpec.model_validate(
+            {"title": "A test", "data": {"file": "x.csv", **data}, "model": model}
+        )
         columns = {name: as_data(column) for name, column in frame.items()}
-        return build_design(spec, Dataset(pd.DataFrame(columns), sha256="", size=1, notes=()))
+        table = pd.DataFrame(columns, index=frame.index)
+        return build_design(spec, Dataset(table, sha256="", size=1, notes=()))
 
     return make
 

@@ -8,6 +8,7 @@ from collections.abc import Sequence
 from concurrent.futures import Future
 from contextlib import AbstractContextManager, nullcontext
 from dataclasses import dataclass
+from itertools import chain
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -96,15 +97,14 @@ def _renderer(options: ReportOptions) -> AbstractContextManager[Renderer | None]
 def _analyse_all(
     studies: Sequence[Study], options: ReportOptions, renderer: Renderer | None
 ) -> list[_Analysed | _Outcome]:
-    loading = TerminalClock()
-    with loading.stage("loading libraries"):
+    first = TerminalClock()  # loading counts for the first study
+    with first.stage("loading libraries"):
         from reanalysis.analysis.run import analyse
         from reanalysis.bayesian.model import ModelStore
         from reanalysis.report.write import check_place
     store = ModelStore()
     results: list[_Analysed | _Outcome] = []
-    for study in studies:
-        clock = TerminalClock()
+    for study, clock in zip(studies, chain([first], (TerminalClock() for _ in studies)), strict=False):
         clock.heading(study.path.name)
         try:
             check_place(options.out / study.name)

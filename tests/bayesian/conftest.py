@@ -101,23 +101,23 @@ def priors() -> Callable[..., PriorSet]:
 
 
 @pytest.fixture(scope="session")
-def plant(modelled: Callable[..., Design], table_of: Callable[[str], Any]) -> Design:
+def plant(design_of: Callable[..., Design], table_of: Callable[[str], Any]) -> Design:
     """Dobson's plant weights: weight on group."""
-    return modelled(table_of("dobson_plant_weight"), "weight ~ group")
+    return design_of(table_of("dobson_plant_weight"), "weight ~ group")
 
 
 @pytest.fixture(scope="session")
-def norris(modelled: Callable[..., Design], table_of: Callable[[str], Any]) -> Design:
+def norris(design_of: Callable[..., Design], table_of: Callable[[str], Any]) -> Design:
     """NIST's Norris data: y on x."""
-    return modelled(table_of("nist_norris"), "y ~ x")
+    return design_of(table_of("nist_norris"), "y ~ x")
 
 
 @pytest.fixture(scope="session")
-def spector(modelled: Callable[..., Design], table_of: Callable[[str], Any]) -> Design:
+def spector(design_of: Callable[..., Design], table_of: Callable[[str], Any]) -> Design:
     """Spector and Mazzeo's grades, with the teaching method as a factor and two predictors only."""
     table = table_of("spector")
     table["PSI"] = np.where(table["PSI"] > 0.5, "yes", "no")
-    return modelled(table, "GRADE ~ GPA + PSI", "bernoulli")
+    return design_of(table, "GRADE ~ GPA + PSI", "bernoulli")
 
 
 @pytest.fixture(scope="session")

@@ -120,7 +120,7 @@ def marginals(log_density: np.ndarray, grids: tuple[np.ndarray, np.ndarray], exa
 
 
 @pytest.fixture(scope="module")
-def beetles(modelled: Callable[..., Design], table_of: Any) -> Callable[[float], Design]:
+def beetles(design_of: Callable[..., Design], table_of: Any) -> Callable[[float], Design]:
     """Give a function that makes Bliss's beetles one by one, dose in tenths above an origin."""
     table = table_of("bliss_beetle")
 
@@ -129,7 +129,7 @@ def beetles(modelled: Callable[..., Design], table_of: Any) -> Callable[[float],
         pairs = zip(table["killed"], table["n"], strict=True)
         dead = np.concatenate([np.arange(n) < killed for killed, n in pairs])
         frame = pd.DataFrame({"dead": dead.astype(float), "dose": dose.to_numpy()})
-        return modelled(frame, "dead ~ dose", "bernoulli")
+        return design_of(frame, "dead ~ dose", "bernoulli")
 
     return make
 
@@ -178,11 +178,11 @@ def test_beetles_under_priors_at_the_centre(
 
 @pytest.mark.mcmc
 def test_poisson_under_priors_at_zero(
-    modelled: Any, table_of: Any, priors: Any, posterior_of: Any, known: Any, exact: Any, agree_column: Any
+    design_of: Any, table_of: Any, priors: Any, posterior_of: Any, known: Any, exact: Any, agree_column: Any
 ) -> None:
     """Dobson's counts with N(0, 2.5) and N(0, .5) at zero predictors have the posterior of quadrature."""
     design, want = (
-        modelled(table_of("dobson_poisson_regression"), "y ~ x", "poisson"),
+        design_of(table_of("dobson_poisson_regression"), "y ~ x", "poisson"),
         known["dobson_poisson_log"],
     )
     prior_set = priors(design, dist.Normal(sd=2.5), dist.Normal(sd=0.5), intercept_at="zero")
@@ -199,11 +199,11 @@ def test_poisson_under_priors_at_zero(
 
 @pytest.mark.mcmc
 def test_rate_with_exposure_is_a_gamma(
-    modelled: Any, priors: Any, posterior_of: Any, exact: Any, agree_column: Any, plant: Design
+    design_of: Any, priors: Any, posterior_of: Any, exact: Any, agree_column: Any, plant: Design
 ) -> None:
     """One log rate under a flat prior: the rate is gamma with shape sum(y) and rate sum(exposure)."""
     frame = pd.DataFrame({"y": [0.0, 3.0, 1.0, 4.0, 2.0], "hours": [1.5, 4.0, 2.0, 3.0, 2.5]})
-    design = modelled(frame, "y ~ 1", "poisson", exposure="hours")
+    design = design_of(frame, "y ~ 1", "poisson", exposure="hours")
 
     fit = posterior_of(design, priors(design, dist.Flat()))
 

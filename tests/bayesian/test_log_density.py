@@ -47,11 +47,11 @@ def draws_of(family: str) -> Draws:
 
 @pytest.mark.parametrize("family, link", BY_HAND)
 def test_log_likelihood_is_the_sum_over_rows(
-    modelled: Callable[..., Design], family: str, link: str, monkeypatch: pytest.MonkeyPatch
+    design_of: Callable[..., Design], family: str, link: str, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """Draw by draw and row by row with scipy, the exposure's logarithm added to the linear predictor."""
     keys = {"exposure": "hours"} if family == "poisson" else {}
-    design = modelled(FRAME, f"{family} ~ x", family, link=link, **keys)
+    design = design_of(FRAME, f"{family} ~ x", family, link=link, **keys)
     want = []
     for (intercept, slope), sigma in zip(SLOPES.reshape(-1, 2), SIGMA.ravel(), strict=True):
         eta = intercept + slope * FRAME["x"] + (np.log(FRAME["hours"]) if keys else 0.0)
@@ -63,9 +63,9 @@ def test_log_likelihood_is_the_sum_over_rows(
 
 
 @pytest.mark.parametrize("at", ["centre", "zero"])
-def test_log_prior_is_the_sum_over_parameters(modelled: Callable[..., Design], priors: Any, at: str) -> None:
+def test_log_prior_is_the_sum_over_parameters(design_of: Callable[..., Design], priors: Any, at: str) -> None:
     """Each prior is evaluated at what it is about: the intercept's at the centre of the data, or at zero."""
-    design = modelled(FRAME, "gaussian ~ x")
+    design = design_of(FRAME, "gaussian ~ x")
     prior_set = priors(
         design,
         dist.Normal(mean=20.0, sd=5.0),
@@ -84,9 +84,9 @@ def test_log_prior_is_the_sum_over_parameters(modelled: Callable[..., Design], p
     assert log_prior(draws_of("gaussian"), prior_set, design) == pytest.approx(want.ravel(), rel=1e-12)
 
 
-def test_flat_prior_has_a_constant_density(modelled: Callable[..., Design], priors: Any) -> None:
+def test_flat_prior_has_a_constant_density(design_of: Callable[..., Design], priors: Any) -> None:
     """Flat coefficients add nothing; the reference prior of sigma adds -log sigma."""
-    design = modelled(FRAME, "gaussian ~ x")
+    design = design_of(FRAME, "gaussian ~ x")
     prior_set = priors(design, dist.Flat(), dist.Flat(), auxiliary=dist.LogFlat())
 
     assert log_prior(draws_of("gaussian"), prior_set, design) == pytest.approx(-np.log(SIGMA.ravel()))

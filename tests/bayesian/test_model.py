@@ -63,7 +63,7 @@ ALONE = [
 
 
 @pytest.fixture(scope="module")
-def mixed(modelled: Callable[..., Design]) -> Callable[..., Design]:
+def mixed(design_of: Callable[..., Design]) -> Callable[..., Design]:
     """Give a function that makes a design with a numeric column far from zero and a factor."""
     rng = np.random.default_rng(5)
     x = rng.normal(30.0, 6.0, 24)
@@ -79,7 +79,7 @@ def mixed(modelled: Callable[..., Design]) -> Callable[..., Design]:
     )
 
     def make(family: str, right: str = "x + g", **keys: Any) -> Design:
-        return modelled(frame, f"{family} ~ {right}", family, **keys)
+        return design_of(frame, f"{family} ~ {right}", family, **keys)
 
     return make
 
@@ -252,14 +252,16 @@ def test_structures_differ_by_what_the_graph_depends_on(plant: Design, norris: D
 
 
 @pytest.mark.parametrize("family, exposure", [("gaussian", None), ("poisson", None), ("poisson", "e")])
-def test_an_intercept_alone_is_a_model(modelled: Any, priors: Any, family: str, exposure: str | None) -> None:
+def test_an_intercept_alone_is_a_model(
+    design_of: Any, priors: Any, family: str, exposure: str | None
+) -> None:
     """Bambi refuses a constant column that is not its own intercept: it gets its own.
 
     The counts equal the logarithm of their exposure, which must not confuse the two.
     """
     frame = pd.DataFrame({"y": [0.0, 1.0, 2.0, 1.0], "e": np.exp([0.0, 1.0, 2.0, 1.0])})
     keys = {} if exposure is None else {"exposure": exposure}
-    design = modelled(frame, "y ~ 1", family, **keys)
+    design = design_of(frame, "y ~ 1", family, **keys)
     auxiliary = dist.LogFlat() if family == "gaussian" else None
     prior_set = priors(design, dist.Normal(mean=0.3, sd=1.0), auxiliary=auxiliary)
     inputs = bound_inputs(design, prior_set, choose_scaling(design, prior_set))

@@ -76,7 +76,7 @@ def mixed() -> pd.DataFrame:
     ],
 )
 def test_weak_rule_is_bambis(
-    modelled: Callable[..., Design], mixed: pd.DataFrame, formula: str, family: str, link: str | None
+    design_of: Callable[..., Design], mixed: pd.DataFrame, formula: str, family: str, link: str | None
 ) -> None:
     """Every number equals the default prior that bambi itself resolves for the same data."""
     theirs = bmb.Model(formula, mixed, family=family, link=link)
@@ -93,7 +93,7 @@ def test_weak_rule_is_bambis(
         common.insert(0, (np.atleast_1d(args["mu"]), np.atleast_1d(args["sigma"])))
     want = list(zip(*(np.concatenate(part) for part in zip(*common, strict=True)), strict=True))
 
-    ours = weak_priors(modelled(mixed, formula, family, **({} if link is None else {"link": link})))
+    ours = weak_priors(design_of(mixed, formula, family, **({} if link is None else {"link": link})))
 
     assert list(parameters(ours).values()) == [pytest.approx(pair, rel=1e-12) for pair in want]
     if family == "gaussian":
@@ -106,10 +106,10 @@ def test_weak_rule_is_bambis(
 
 
 def test_weak_priors_of_published_data(
-    plant: Design, norris: Design, modelled: Callable[..., Design], table_of: Any
+    plant: Design, norris: Design, design_of: Callable[..., Design], table_of: Any
 ) -> None:
     """Numbers that bambi 0.21 prints for Dobson's plants, NIST's Norris data and Spector's grades."""
-    spector = modelled(table_of("spector"), "GRADE ~ GPA + PSI", "bernoulli")
+    spector = design_of(table_of("spector"), "GRADE ~ GPA + PSI", "bernoulli")
 
     assert parameters(weak_priors(plant)) == {
         "Intercept": pytest.approx((4.8465, 2.4260893), rel=1e-7),
@@ -169,9 +169,9 @@ def test_sceptic_without_a_size_says_what_was_used(plant: Design, spector: Desig
     assert "the outcome's SD on the model's scale / sd(GPA)" in grades.origin
 
 
-def test_sceptic_of_an_intercept_alone(modelled: Callable[..., Design], mixed: pd.DataFrame) -> None:
+def test_sceptic_of_an_intercept_alone(design_of: Callable[..., Design], mixed: pd.DataFrame) -> None:
     """A question about a mean has no column to scale by: a quarter SD of the outcome."""
-    prior = doubt(modelled(mixed, "y ~ 1"), "Intercept")
+    prior = doubt(design_of(mixed, "y ~ 1"), "Intercept")
 
     assert prior.distribution.sd == pytest.approx(0.25 * np.std(mixed["y"]), rel=1e-12)
     assert prior.origin.endswith("used instead: 0.25 sd(y)")
@@ -198,9 +198,9 @@ def stated(**keys: Any) -> PriorSpec:
     return PriorSpec.model_validate({"name": "own", "source": "a pilot", **keys})
 
 
-def test_author_priors_by_term_and_by_column(modelled: Callable[..., Design], mixed: pd.DataFrame) -> None:
+def test_author_priors_by_term_and_by_column(design_of: Callable[..., Design], mixed: pd.DataFrame) -> None:
     """A term's prior covers its columns, a column's own prior goes before it, the rest stays weak."""
-    design = modelled(mixed, "y ~ x + g")
+    design = design_of(mixed, "y ~ x + g")
     weak = weak_priors(design)
     wide, narrow = {"dist": "normal", "sd": 9.0}, {"dist": "normal", "mean": 1.0, "sd": 0.1}
 

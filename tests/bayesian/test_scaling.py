@@ -22,13 +22,13 @@ from reanalysis.study import distributions as dist
 
 
 @pytest.fixture(scope="module")
-def years(modelled: Callable[..., Design]) -> Callable[..., Design]:
+def years(design_of: Callable[..., Design]) -> Callable[..., Design]:
     """Give a function that makes a design with a year near 2000 and an outcome in thousands."""
     rng = np.random.default_rng(12)
     year = np.arange(1990.0, 2014.0)
     frame = pd.DataFrame({"year": year, "g": np.tile(["a", "b", "b"], 8), "n": rng.poisson(3.0, 24)})
     frame["y"] = 5000.0 + 12.0 * (year - 2000.0) + rng.normal(0.0, 30.0, 24)
-    return lambda formula, family="gaussian": modelled(frame, formula, family)
+    return lambda formula, family="gaussian": design_of(frame, formula, family)
 
 
 NORMAL = dist.Normal(mean=1.0, sd=2.0)

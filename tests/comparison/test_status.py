@@ -36,9 +36,9 @@ def missing(name: str, reason: str = "it would be improper") -> NoPosterior:
 
 
 @pytest.fixture(scope="module")
-def ols(modelled: Any, table_of: Any) -> Any:
+def ols(design_of: Any, table_of: Any) -> Any:
     """A frequentist fit without fault."""
-    return fit_frequentist(modelled(table_of("dobson_plant_weight"), "weight ~ group"), level=0.95, seed=0)
+    return fit_frequentist(design_of(table_of("dobson_plant_weight"), "weight ~ group"), level=0.95, seed=0)
 
 
 def test_nothing_to_say_is_sound(ols: Any) -> None:

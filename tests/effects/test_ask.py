@@ -23,9 +23,9 @@ FRAME = pd.DataFrame(
 
 
 @pytest.fixture(scope="module")
-def design(modelled: Callable[..., Design]) -> Design:
+def design(design_of: Callable[..., Design]) -> Design:
     """A factor with three levels and a number."""
-    return modelled(FRAME, "y ~ liner + days")
+    return design_of(FRAME, "y ~ liner + days")
 
 
 def test_questions_find_their_column(design: Design) -> None:
@@ -58,7 +58,7 @@ def test_unknown_effects_are_all_named(design: Design) -> None:
     assert [p.advice for p in caught.value.problems] == ['write "liner[film]"', "use one of these names"]
 
 
-def test_intercept_is_a_question_only_on_its_own(design: Design, modelled: Callable[..., Design]) -> None:
+def test_intercept_is_a_question_only_on_its_own(design: Design, design_of: Callable[..., Design]) -> None:
     """Beside predictors its prior is about their centre, which is not what the coefficient is."""
     spec = (QuestionSpec(name="level", effect="Intercept"),)
 
@@ -68,4 +68,4 @@ def test_intercept_is_a_question_only_on_its_own(design: Design, modelled: Calla
         resolve_questions(spec, design)
 
     assert caught.value.problems[0].allowed == "liner[film], liner[foam], days"
-    assert resolve_questions(spec, modelled(FRAME, "y ~ 1"))[0].column == 0
+    assert resolve_questions(spec, design_of(FRAME, "y ~ 1"))[0].column == 0

@@ -58,9 +58,9 @@ def test_equivalence_of_a_small_effect() -> None:
 
 
 @pytest.fixture(scope="module")
-def plant_fit(modelled: Callable[..., Any], table_of: Any) -> Any:
+def plant_fit(design_of: Callable[..., Any], table_of: Any) -> Any:
     """OLS of Dobson's plant weights."""
-    return fit_frequentist(modelled(table_of("dobson_plant_weight"), "weight ~ group"), level=0.95, seed=0)
+    return fit_frequentist(design_of(table_of("dobson_plant_weight"), "weight ~ group"), level=0.95, seed=0)
 
 
 def test_equivalence_of_the_plants(plant_fit: Any) -> None:

@@ -66,9 +66,9 @@ def test_beyond_needs_a_limit() -> None:
 
 
 @pytest.fixture(scope="module")
-def plant(modelled: Any, table_of: Any) -> Any:
+def plant(design_of: Any, table_of: Any) -> Any:
     """Dobson's plant weights."""
-    return modelled(table_of("dobson_plant_weight"), "weight ~ group")
+    return design_of(table_of("dobson_plant_weight"), "weight ~ group")
 
 
 @pytest.fixture(scope="module")

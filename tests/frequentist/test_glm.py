@@ -70,13 +70,13 @@ GROUPED = ("beetle", "snoring")
 
 
 @pytest.fixture
-def problem(design_of, reference_table, published):
+def problem(design_of, table_of, published):
     """Give a function that fits one published problem and returns it with its values."""
 
     def fit(name, **changes):
         prepare, formula, family, keys = PROBLEMS[name]
         values = published["problems"][name]
-        table = prepare(reference_table(values["data"]))
+        table = prepare(table_of(values["data"]))
         design = design_of(table, formula, family, **{**keys, **changes})
         return fit_frequentist(design, level=0.95, seed=3), values
 
@@ -100,9 +100,9 @@ def test_published_problem(problem, name):
     assert (fit.method, fit.distribution, fit.converged, fit.warnings) == ("GLM", "z", True, ())
 
 
-def test_misprinted_row_would_be_noticed(design_of, reference_table, published):
+def test_misprinted_row_would_be_noticed(design_of, table_of, published):
     """With 60 in place of 61 beetles killed in row 7, the published slope is missed."""
-    table = reference_table("bliss_beetle")
+    table = table_of("bliss_beetle")
     table.loc[6, "killed"] = 60
     fit = fit_frequentist(
         design_of(beetles(table), "event ~ dose", "bernoulli", event="yes"), level=0.95, seed=3
@@ -191,10 +191,10 @@ def test_model_without_intercept_is_compared_with_no_effect(design_of):
     assert fit.coefficient("g[b]").estimate == pytest.approx(math.log(2.0))
 
 
-def test_separated_coefficient_has_no_estimate(design_of, reference_table, published):
+def test_separated_coefficient_has_no_estimate(design_of, table_of, published):
     """In the endometrial data NV has no finite estimate; the others are those of the limit."""
     values = published["endometrial"]
-    design = design_of(reference_table("endometrial"), "HG ~ NV + PI + EH", "bernoulli")
+    design = design_of(table_of("endometrial"), "HG ~ NV + PI + EH", "bernoulli")
     fit = fit_frequentist(design, level=0.95, seed=3)
     nv = fit.coefficient("NV")
     assert isinstance(nv, NotEstimable)
@@ -279,9 +279,9 @@ def test_inverse_links_are_those_of_statsmodels(family):
     )
 
 
-def test_log_likelihood_is_that_of_statsmodels(design_of, reference_table):
+def test_log_likelihood_is_that_of_statsmodels(design_of, table_of):
     """Our log-likelihood of a Poisson fit equals the library's, constants included."""
-    table = reference_table("dobson_poisson_regression")
+    table = table_of("dobson_poisson_regression")
     fit = fit_frequentist(design_of(table, "y ~ x", "poisson"), level=0.95, seed=3)
     expected = statsmodels_family(find_family("poisson", None)).loglike(table["y"].to_numpy(), fit.fitted)
     assert fit.goodness.loglik == pytest.approx(float(expected), rel=1e-12)

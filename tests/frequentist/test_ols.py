@@ -37,11 +37,11 @@ FORMULAS = {
 
 
 @pytest.fixture
-def nist_fit(design_of, reference_table):
+def nist_fit(design_of, table_of):
     """Give a function that fits one of NIST's problems."""
 
     def fit(name):
-        table = reference_table(f"nist_{name}")
+        table = table_of(f"nist_{name}")
         if "x" in table:
             table = powers(table.astype(float), 10 if name == "filip" else 5)
         return fit_frequentist(design_of(table, FORMULAS[name]), level=0.95, seed=1)
@@ -99,10 +99,10 @@ def test_all_levels_without_intercept_is_uncentred(design_of):
     assert fit.goodness.r_squared_kind == "uncentred"
 
 
-def test_plant_weights(design_of, reference_table, published):
+def test_plant_weights(design_of, table_of, published):
     """Dobson's two groups: estimate, error, t, p and interval as printed."""
     values = published["plant_weight"]
-    fit = fit_frequentist(design_of(reference_table(values["data"]), "weight ~ group"), level=0.95, seed=1)
+    fit = fit_frequentist(design_of(table_of(values["data"]), "weight ~ group"), level=0.95, seed=1)
     np.testing.assert_allclose(numbers(fit, "estimate"), values["coef"], rtol=1e-12)
     np.testing.assert_allclose(numbers(fit, "se"), values["se"], rtol=1e-12)
     np.testing.assert_allclose(numbers(fit, "statistic"), values["t"], rtol=1e-11)
@@ -114,9 +114,9 @@ def test_plant_weights(design_of, reference_table, published):
     assert (fit.method, fit.distribution, fit.converged) == ("OLS", "t", True)
 
 
-def test_transposed_levels_change_the_sign(design_of, reference_table, published):
+def test_transposed_levels_change_the_sign(design_of, table_of, published):
     """With the treated group as reference the difference has the other sign."""
-    table = reference_table("dobson_plant_weight")
+    table = table_of("dobson_plant_weight")
     table["group"] = pd.Categorical(table["group"], categories=["trt", "ctl"], ordered=True)
     fit = fit_frequentist(design_of(table, "weight ~ group"), level=0.95, seed=1)
     assert fit.coefficient("group[ctl]").estimate == pytest.approx(0.371)

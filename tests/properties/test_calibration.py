@@ -19,11 +19,11 @@ from reanalysis.study.distributions import Normal
 KEPT, BINS, STUDIES = 39, 8, 96
 
 
-def test_confidence_intervals_cover_as_often_as_their_level_says(modelled: Callable[..., Any]) -> None:
+def test_confidence_intervals_cover_as_often_as_their_level_says(design_of: Callable[..., Any]) -> None:
     """90 % t intervals of a small OLS fit hold the true slope in 90 % of 1,000 studies (within 3 SE)."""
     random = np.random.default_rng(20261201)
     x = random.normal(size=12)
-    design = modelled(pd.DataFrame({"y": x + random.normal(size=12), "x": x}), "y ~ x")
+    design = design_of(pd.DataFrame({"y": x + random.normal(size=12), "x": x}), "y ~ x")
     covered = 0
     for _ in range(1000):
         outcome = replace(design.response, values=1.5 - 0.7 * x + random.normal(scale=2.0, size=12))
@@ -34,13 +34,13 @@ def test_confidence_intervals_cover_as_often_as_their_level_says(modelled: Calla
 
 @pytest.mark.mcmc
 def test_true_values_rank_evenly_among_the_draws(
-    modelled: Callable[..., Any], store: Any, sampler: Any
+    design_of: Callable[..., Any], store: Any, sampler: Any
 ) -> None:
     """Parameters drawn from the prior rank uniformly among posterior draws (Talts et al. 2018)."""
     random = np.random.default_rng(20261202)
     x = random.normal(loc=3.0, size=60)
     frame = pd.DataFrame({"y": np.arange(60) % 2, "x": x})
-    design = modelled(frame, "y ~ x", "bernoulli")
+    design = design_of(frame, "y ~ x", "bernoulli")
     priors = (ParameterPrior("Intercept", Normal(sd=1.0), ""), ParameterPrior("x", Normal(sd=0.8), ""))
     prior_set = PriorSet("simulated", "", "centre", priors, ())
     ranks = np.empty((STUDIES, 2), dtype=int)

@@ -63,10 +63,10 @@ def world() -> Callable[..., World]:
 
 
 @pytest.fixture(scope="session")
-def one_column(modelled: Callable[..., Any]) -> Any:
+def one_column(design_of: Callable[..., Any]) -> Any:
     """A design with one column and no auxiliary parameter; its data play no part."""
     frame = pd.DataFrame({"y": [0.0, 1.0, 1.0, 0.0], "x": [-1.0, 0.5, 2.0, 1.0]})
-    return modelled(frame, "y ~ 0 + x", "bernoulli")
+    return design_of(frame, "y ~ 0 + x", "bernoulli")
 
 
 @pytest.fixture(scope="session")

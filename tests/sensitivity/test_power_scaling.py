@@ -57,14 +57,14 @@ def test_a_constant_prior_has_no_sensitivity(world: Any) -> None:
 
 
 @pytest.mark.mcmc
-def test_an_intercept_far_from_zero_is_no_conflict(modelled: Any, posterior_of: Any) -> None:
+def test_an_intercept_far_from_zero_is_no_conflict(design_of: Any, posterior_of: Any) -> None:
     """A mild prior that fits the centre of the data is not flagged, though zero predictors lie far away.
 
     Scored at the intercept at zero predictors, as the libraries do, the same prior would be.
     """
     rng = np.random.default_rng(2)
     x = rng.normal(50.0, 4.0, 40)
-    design = modelled(
+    design = design_of(
         pd.DataFrame({"x": x, "y": 26.0 + 2.0 * (x - 50.0) + rng.normal(0.0, 4.0, 40)}), "y ~ x"
     )
     coefficients = (

@@ -224,9 +224,11 @@ def test_no_posterior_gives_no_sweep(truth: Any, one_column: Any) -> None:
 
 
 @pytest.mark.mcmc
-def test_sweep_of_a_model_equals_a_fit_at_that_width(modelled: Any, table_of: Any, posterior_of: Any) -> None:
+def test_sweep_of_a_model_equals_a_fit_at_that_width(
+    design_of: Any, table_of: Any, posterior_of: Any
+) -> None:
     """Plant weights: everything but the effect's prior stays as in the main set, sigma's prior included."""
-    design = modelled(table_of("dobson_plant_weight"), "weight ~ group")
+    design = design_of(table_of("dobson_plant_weight"), "weight ~ group")
     weak = weak_priors(design)
     asked = Question("q", "group[trt]", "", 1, "less", 0.2, 0.9)
     main, helper = posterior_of(design, weak), posterior_of(design, flat_priors(design))
