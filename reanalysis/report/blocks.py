@@ -11,7 +11,8 @@ from dataclasses import dataclass, field
 from typing import Literal
 
 Analysis = Literal["frequentist", "bayesian", "none"]
-Align = Literal["left", "right", "centre"]
+Align = Literal["left", "right", "centre", "whole"]
+"""Of a column's cells; ``whole`` is left, and never broken over lines."""
 
 MAX_ROWS = 60
 """Rows that a table of the report may show; layout costs some 6 ms a row in a PDF."""

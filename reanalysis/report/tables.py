@@ -172,7 +172,7 @@ def priors_in_full(context: Context) -> Table:
         columns=(
             TableColumn("prior set"),
             TableColumn("parameter"),
-            TableColumn("prior"),
+            TableColumn("prior", "none", "whole"),
             TableColumn("origin"),
         ),
         rows=shown,
@@ -185,17 +185,20 @@ def _prior_rows(context: Context, prior_set: PriorSet) -> list[tuple[Cell, ...]]
     design = context.analysis.prepared.design
     units = {column.name: column.unit for column in design.columns} | {"sigma": design.response.unit}
     weak = {} if prior_set.name in ("weak", "flat") else _priors_of(context, "weak")
-    rows: list[tuple[Cell, ...]] = []
-    same = 0
+    alike: dict[tuple[str, str], list[str]] = {}
+    same = False
     for prior in (*prior_set.coefficients, *prior_set.auxiliary):
         if weak.get(prior.name) == prior.distribution:
-            same += 1
+            same = True
             continue
         words = describe(prior.distribution, units.get(prior.name, ""))
-        rows.append((prior_set.name, prior.name, words, prior.origin))
-    if same:
-        rows.append((prior_set.name, "all others", SpanningCell("as in the weak prior set", 2)))
-    return rows
+        alike.setdefault((words, prior.origin), []).append(prior.name)
+    rows: list[tuple[Cell, ...]] = [
+        (prior_set.name, ", ".join(names), words, origin) for (words, origin), names in alike.items()
+    ]
+    return (
+        [*rows, (prior_set.name, "all others", SpanningCell("as in the weak prior set", 2))] if same else rows
+    )
 
 
 def _priors_of(context: Context, name: str) -> dict[str, Distribution]:

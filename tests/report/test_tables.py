@@ -173,7 +173,7 @@ def test_long_table_is_capped(analysed) -> None:
 
 
 def test_priors_in_full(analysed) -> None:
-    """Every prior that is not as in the weak set has its row, with unit and origin."""
+    """Every prior that is not as in the weak set has a row, alone or with its like, with unit and origin."""
     table = tables.priors_in_full(Context(analysed("sample_data/firmness")))
     cells = {row[:2]: row[2:] for row in table.rows if len(row) == 4}
 
@@ -181,7 +181,8 @@ def test_priors_in_full(analysed) -> None:
     assert cells["flat", "sigma"][0] == "flat in the logarithm (1/x)"
     assert "sd(firmness) / sd(days)" in cells["weak", "days"][1]
     assert cells["weak", "days"][0].endswith(f"{numbers.THIN}N per day")
-    assert cells["sceptical", "liner[film]"] != cells["weak", "liner[film]"]
+    assert cells["sceptical", "liner[film], liner[foam]"] != cells["weak", "liner[film]"]
+    assert cells["flat", "Intercept, liner[film], liner[foam], days"] == ("flat", "no prior information")
 
 
 @pytest.mark.parametrize("study", STUDIES)

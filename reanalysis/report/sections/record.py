@@ -5,7 +5,15 @@ from __future__ import annotations
 from importlib.metadata import version
 
 from reanalysis.report import numbers, tables
-from reanalysis.report.blocks import Block, Code, Definition, Definitions, Listing, Section, Subheading
+from reanalysis.report.blocks import (
+    Block,
+    Code,
+    Definition,
+    Definitions,
+    Listing,
+    Section,
+    Subheading,
+)
 from reanalysis.report.context import Context
 from reanalysis.report.results import library_versions
 from reanalysis.report.sections.answers import rows_words
@@ -14,19 +22,19 @@ from reanalysis.report.wording import CAUTIONS, GLOSSARY, REFERENCES
 
 
 def record_section(context: Context) -> Section:
-    """Methods, data, priors, software, cautions, glossary, references."""
+    """Methods, data, software, glossary, priors, references, cautions."""
     blocks: list[Block] = [
         Code("Methods, ready to paste", methods_paragraph(context), "prose"),
         Subheading("Data and software"),
         Definitions(_sources(context)),
-        Subheading("Priors"),
-        tables.priors_in_full(context),
-        Subheading("Cautions"),
-        Listing(CAUTIONS),
         Subheading("Words"),
         Definitions(tuple(Definition(term, text) for term, text in GLOSSARY)),
+        Subheading("Priors"),
+        tables.priors_in_full(context),
         Subheading("References"),
         Listing(REFERENCES),
+        Subheading("Cautions"),
+        Listing((" ".join(CAUTIONS),)),
     ]
     return Section("record", "For the record", tuple(blocks))
 
