@@ -193,12 +193,14 @@ def _prior_rows(context: Context, prior_set: PriorSet) -> list[tuple[Cell, ...]]
             continue
         words = describe(prior.distribution, units.get(prior.name, ""))
         alike.setdefault((words, prior.origin), []).append(prior.name)
+    everything = [prior.name for prior in prior_set.coefficients]
     rows: list[tuple[Cell, ...]] = [
-        (prior_set.name, ", ".join(names), words, origin) for (words, origin), names in alike.items()
+        (prior_set.name, "every coefficient" if names == everything else ", ".join(names), words, origin)
+        for (words, origin), names in alike.items()
     ]
-    return (
-        [*rows, (prior_set.name, "all others", SpanningCell("as in the weak prior set", 2))] if same else rows
-    )
+    if same:
+        rows.append((prior_set.name, "all others", SpanningCell("as in the weak prior set", 2)))
+    return rows
 
 
 def _priors_of(context: Context, name: str) -> dict[str, Distribution]:

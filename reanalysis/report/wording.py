@@ -34,8 +34,8 @@ GLOSSARY = (
     ("credible interval", "Holds the effect with the stated probability, given model, prior and data."),
     ("prior set", "One complete choice of priors, one for each parameter of the model."),
     (
-        "smallest effect that matters",
-        "The effect below which nobody would act otherwise; stated by the author, in the effect’s own unit.",
+        "what matters",
+        "The smallest effect that would change what is done; stated by the author, in the effect’s own unit.",
     ),
     ("tipping prior", "The prior width at which a probability crosses the one needed to act."),
     (
