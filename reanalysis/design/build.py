@@ -15,6 +15,7 @@ from reanalysis.design.model import Column, Design, FloatArray, Response, RowAcc
 from reanalysis.design.outcome import read_response
 from reanalysis.design.units import coefficient_unit
 from reanalysis.design.variables import (
+    LARGEST,
     Variable,
     evaluate,
     is_labels,
@@ -209,12 +210,12 @@ def _shape_problems(expanded: tuple[Expanded, ...], rows: int) -> list[Problem]:
     problems: list[Problem] = []
     for column in expanded:
         values = column.numbers
-        if not np.all(np.isfinite(values)):
+        if not np.all(np.abs(values) <= LARGEST):
             problems.append(
                 Problem(
                     where=f"column {column.name} of the model",
-                    found="a product is too large for a number",
-                    allowed="finite values",
+                    found="a product is too large to compute with",
+                    allowed=f"numbers up to {LARGEST:.0e}",
                     advice="rescale the columns of this interaction",
                 )
             )

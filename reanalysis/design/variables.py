@@ -141,23 +141,29 @@ def missing_columns(names: tuple[str, ...], frame: pd.DataFrame) -> list[Problem
     return problems
 
 
+LARGEST, SMALLEST = 1e100, 1e-100
+"""Numbers beyond overflow, and spreads below vanish, as soon as they are squared."""
+
+
 def not_finite(names: tuple[str, ...], frame: pd.DataFrame) -> list[Problem]:
-    """List the columns that hold infinite numbers."""
-    problems: list[Problem] = []
-    for name in names:
-        if is_labels(frame[name]):
-            continue
-        count = int(np.sum(np.isinf(_floats(frame[name]))))
-        if count:
-            problems.append(
-                Problem(
-                    where=f"column {name}",
-                    found=f"{count} infinite values",
-                    allowed="finite numbers",
-                    advice="correct them in the data, or leave them empty to count as missing",
-                )
-            )
-    return problems
+    """List the columns that hold infinite numbers, or some too large or too alike to compute with."""
+    numbers = (name for name in names if not is_labels(frame[name]))
+    found = ((name, _range_problem(_floats(frame[name]))) for name in numbers)
+    return [Problem(f"column {name}", *problem) for name, problem in found if problem is not None]
+
+
+def _range_problem(values: FloatArray) -> tuple[str, str, str] | None:
+    """What was found, what is allowed and what to do; None when the numbers can be computed with."""
+    infinite, huge = int(np.sum(np.isinf(values))), int(np.sum(np.abs(values) > LARGEST))
+    rescale = "measure the column in another unit"
+    if infinite:
+        advice = "correct them in the data, or leave them empty to count as missing"
+        return f"{infinite} infinite values", "finite numbers", advice
+    if huge:
+        return f"{huge} numbers beyond {LARGEST:.0e}", f"numbers up to {LARGEST:.0e}", rescale
+    if 0.0 < float(np.ptp(values)) < SMALLEST:
+        return f"its numbers differ by less than {SMALLEST:.0e}", "numbers further apart", rescale
+    return None
 
 
 def _floats(column: pd.Series) -> FloatArray:

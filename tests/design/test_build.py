@@ -199,7 +199,7 @@ def test_combination_without_rows_is_left_to_the_outlook(design_of, apples):
 
 def test_product_too_large(design_of, apples):
     """An interaction whose products overflow is refused with its name."""
-    apples = apples.assign(u=np.linspace(1, 2, 12) * 1e200, w=np.linspace(2, 1, 12) * 1e200)
+    apples = apples.assign(u=np.linspace(1, 2, 12) * 1e60, w=np.linspace(2, 1, 12) * 1e60)
     found = problems_of(lambda: design_of(apples, "firmness ~ u:w"))
     assert "too large" in found["column u:w of the model"]
 
@@ -209,3 +209,14 @@ def test_design_needs_no_statsmodels():
     rooms = "reanalysis.design.build, reanalysis.design.outlook"
     code = f"import sys, {rooms}; sys.exit('statsmodels' in sys.modules)"
     assert subprocess.run([sys.executable, "-c", code], check=False).returncode == 0  # noqa: S603
+
+
+@pytest.mark.parametrize("factor, words", [(1e300, "12 numbers beyond 1e+100"), (1e-300, "less than 1e-100")])
+def test_numbers_that_cannot_be_squared_are_refused(design_of, factor, words):
+    """A column whose squares would overflow or vanish is named, with what to do."""
+    frame = pd.DataFrame({"y": np.arange(1.0, 13.0) * factor, "x": np.arange(12.0)})
+
+    found = problems_of(lambda: design_of(frame, "y ~ x"))
+
+    assert words in found["column y"]
+    assert "another unit" in found["column y"]
