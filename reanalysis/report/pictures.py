@@ -17,6 +17,9 @@ from reanalysis.report.sentences import sign_words
 from reanalysis.sensitivity.result import NoTipping, Sweep, TippingPrior, TippingResult
 from reanalysis.study.distributions import Distribution, Normal
 
+MOST_ROWS = 12
+"""Coefficients in one picture; the table has them all."""
+
 
 def small_pair(context: Context, compared: Compared) -> Figure:
     """The unnumbered pair of intervals beside an answer on page 1."""
@@ -34,6 +37,34 @@ def side_by_side(context: Context, compared: Sequence[Compared]) -> Figure:
     alt = " ".join(_alt_of_pair(one) for one in compared)
     svg = paired.draw_paired(_paired(context, compared))
     return Figure(context.numbering.figure(), caption, alt, svg)
+
+
+def all_coefficients(context: Context) -> list[Figure]:
+    """Every coefficient but the intercept, one picture a unit: for a study that asks no question."""
+    groups: dict[str, list[int]] = {}
+    for position, column in enumerate(context.analysis.prepared.design.columns):
+        if column.kind != "intercept":
+            groups.setdefault(column.unit, []).append(position)
+    return [_coefficients(context, unit, positions[:MOST_ROWS]) for unit, positions in groups.items()]
+
+
+def _coefficients(context: Context, unit: str, positions: Sequence[int]) -> Figure:
+    fit, frequentist = context.main_fit, context.analysis.frequentist
+    rows = [
+        paired.coefficient_row(
+            context.label(position),
+            frequentist.coefficients[position],
+            None if fit is None else fit.coefficients[position],
+        )
+        for position in positions
+    ]
+    names = ", ".join(row.label for row in rows)
+    caption = (
+        f"Confidence interval (square, capped line) above credible interval (circle, thick "
+        f"50{numbers.THIN}% core), each at {context.level}, of {names}. The table has the numbers."
+    )
+    svg = paired.draw_paired(paired.paired_data(rows, _axis_words(context, unit)))
+    return Figure(context.numbering.figure(), caption, caption, svg)
 
 
 def posterior_density(context: Context, compared: Compared, fit: PosteriorFit) -> Figure | None:
@@ -166,10 +197,12 @@ def _paired(context: Context, compared: Sequence[Compared]) -> paired.PairedData
 
 
 def _axis(context: Context, compared: Compared) -> str:
-    design = context.analysis.prepared.design
-    response = design.response
+    return _axis_words(context, compared.question.unit)
+
+
+def _axis_words(context: Context, unit: str) -> str:
+    response = context.analysis.prepared.design.response
     about = f"{response.name} = {response.event}" if response.event is not None else response.name
-    unit = compared.question.unit
     return f"effect on {about}{', ' + unit if unit else ''}"
 
 

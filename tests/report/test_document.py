@@ -297,3 +297,16 @@ def test_headings_name_the_study(report) -> None:
         " · 92 rows · 2 questions"
     )
     assert document.language == "en-GB"
+
+
+def test_a_study_without_questions_still_shows_its_coefficients(analysed) -> None:
+    """The picture of the side-by-side section then holds every coefficient but the intercept."""
+    analysis = replace(analysed("sample_data/firmness"), questions=())
+    section = next(one for one in build_document(analysis).sections if one.id == "side-by-side")
+
+    captions = [plain_text(block.caption) for block in section.blocks if isinstance(block, Figure)]
+
+    assert len(captions) == 2  # N, and N per day
+    assert "of liner[film], liner[foam]." in captions[0]
+    assert "of days." in captions[1]
+    assert "Intercept" not in "".join(captions)

@@ -39,7 +39,10 @@ def side_by_side_section(context: Context) -> Section:
         )
     )
     blocks: list[Block] = [lead, tables.side_by_side(context)]
-    blocks += [pictures.side_by_side(context, group) for group in _by_unit(context.analysis.questions)]
+    questions = context.analysis.questions
+    blocks += [pictures.side_by_side(context, group) for group in _by_unit(questions)]
+    if not questions:
+        blocks += pictures.all_coefficients(context)
     return Section("side-by-side", "Side by side", tuple(blocks))
 
 
