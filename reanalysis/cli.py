@@ -8,9 +8,8 @@ import sys
 from collections.abc import Sequence
 from pathlib import Path
 
-EXIT_OK, EXIT_UNSOUND, EXIT_INVALID, EXIT_STOPPED = 0, 1, 2, 130
-
-FORMATS = ("html", "pdf", "json", "csv")
+from reanalysis.commands.exit_codes import EXIT_STOPPED
+from reanalysis.report.formats import FORMATS
 
 
 def main(arguments: Sequence[str] | None = None) -> int:

@@ -14,7 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 from scipy import special
 
-from reanalysis.study.spec import FamilyName, LinkName
+from reanalysis.study.spec import LINKS, FamilyName, LinkName
 
 FloatArray = NDArray[np.float64]
 
@@ -31,8 +31,6 @@ class Family:
     ----------
     name, link : str
         As in the study file.
-    default_link : bool
-        Whether the link is the one that is used when the study names none.
     statsmodels_family, statsmodels_link : str
         Class names in ``statsmodels.api.families`` and ``.families.links``.
     bambi_family : str
@@ -53,7 +51,6 @@ class Family:
 
     name: FamilyName
     link: LinkName
-    default_link: bool
     statsmodels_family: str
     statsmodels_link: str
     bambi_family: str
@@ -107,7 +104,6 @@ FAMILIES: tuple[Family, ...] = (
     Family(
         name="gaussian",
         link="identity",
-        default_link=True,
         statsmodels_family="Gaussian",
         statsmodels_link="Identity",
         bambi_family="gaussian",
@@ -120,7 +116,6 @@ FAMILIES: tuple[Family, ...] = (
     Family(
         name="bernoulli",
         link="logit",
-        default_link=True,
         statsmodels_family="Binomial",
         statsmodels_link="Logit",
         bambi_family="bernoulli",
@@ -133,7 +128,6 @@ FAMILIES: tuple[Family, ...] = (
     Family(
         name="bernoulli",
         link="probit",
-        default_link=False,
         statsmodels_family="Binomial",
         statsmodels_link="Probit",
         bambi_family="bernoulli",
@@ -146,7 +140,6 @@ FAMILIES: tuple[Family, ...] = (
     Family(
         name="bernoulli",
         link="cloglog",
-        default_link=False,
         statsmodels_family="Binomial",
         statsmodels_link="CLogLog",
         bambi_family="bernoulli",
@@ -159,7 +152,6 @@ FAMILIES: tuple[Family, ...] = (
     Family(
         name="poisson",
         link="log",
-        default_link=True,
         statsmodels_family="Poisson",
         statsmodels_link="Log",
         bambi_family="poisson",
@@ -173,21 +165,15 @@ FAMILIES: tuple[Family, ...] = (
 """Every supported pair of family and link."""
 
 
-def links_of(name: FamilyName) -> tuple[LinkName, ...]:
-    """Links that a family can be used with, the default one first."""
-    rows = [family for family in FAMILIES if family.name == name]
-    return tuple(family.link for family in sorted(rows, key=lambda row: not row.default_link))
-
-
 def find_family(name: FamilyName, link: LinkName | None) -> Family:
     """Return the table's row for a family and a link (None: the default link).
 
     Raises
     ------
     KeyError
-        When the family is not offered with this link; `links_of` lists those that are.
+        When the family is not offered with this link; `LINKS` lists those that are.
     """
-    wanted = link or links_of(name)[0]
+    wanted = link or LINKS[name][0]
     for family in FAMILIES:
         if family.name == name and family.link == wanted:
             return family

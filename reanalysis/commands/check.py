@@ -8,12 +8,11 @@ from pathlib import Path
 
 from reanalysis.analysis.prepare import Prepared, prepare
 from reanalysis.commands.errors import print_error
+from reanalysis.commands.exit_codes import EXIT_INVALID, EXIT_OK
 from reanalysis.errors import ReanalysisError
 from reanalysis.report import numbers
 from reanalysis.report.priors_in_words import describe
 from reanalysis.study.read import load_study
-
-EXIT_OK, EXIT_INVALID = 0, 2
 
 
 def run_check(paths: Sequence[Path], *, allow_outside: bool) -> int:

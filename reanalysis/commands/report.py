@@ -13,17 +13,16 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from reanalysis.commands.errors import print_error
+from reanalysis.commands.exit_codes import EXIT_INVALID, EXIT_OK, EXIT_UNSOUND
 from reanalysis.commands.watch import TerminalClock
 from reanalysis.errors import Problem, ReanalysisError, UsageError
+from reanalysis.report.formats import PAGES
 from reanalysis.study.read import load_study
 from reanalysis.study.spec import Study
 
 if TYPE_CHECKING:
     from reanalysis.analysis.result import Analysis
     from reanalysis.report.renderer import Rendered, Renderer
-
-EXIT_OK, EXIT_UNSOUND, EXIT_INVALID = 0, 1, 2
-PAGES = ("html", "pdf")
 
 
 @dataclass(frozen=True, slots=True)

@@ -22,7 +22,6 @@ NONE = "\u2013"
 LARGE, SMALL = 1e6, 1e-4
 """From `LARGE` up and below `SMALL`, powers of ten are written out."""
 MAX_DECIMALS = 12
-SHA_LENGTH = 12
 
 _SUPERSCRIPTS = str.maketrans("-0123456789", "⁻⁰¹²³⁴⁵⁶⁷⁸⁹")
 
@@ -182,11 +181,6 @@ def file_size(size: int) -> str:
     if size < 999_500:
         return f"{size / 1000:.0f}{THIN}kB"
     return f"{count(size // 1_000_000) if size >= 100_000_000 else f'{size / 1e6:.1f}'}{THIN}MB"
-
-
-def short_sha(sha256: str) -> str:
-    """Return the first characters of a checksum, enough to tell two files apart by eye."""
-    return sha256[:SHA_LENGTH]
 
 
 def _numbers(values: tuple[float, ...], decimals: int) -> tuple[str, ...]:

@@ -12,16 +12,9 @@ from pathlib import Path
 from reanalysis.analysis.result import Analysis
 from reanalysis.errors import Problem, ReportError
 from reanalysis.report.export import estimates_csv, provenance_json, results_json
+from reanalysis.report.formats import FORMATS, NAMES, PAGES
 from reanalysis.report.renderer import render
 from reanalysis.report.results import build_results
-
-NAMES = {"html": "report.html", "pdf": "report.pdf", "json": "results.json", "csv": "estimates.csv"}
-"""File of each format; `provenance.json` is always written."""
-
-FORMATS = tuple(NAMES)
-
-PAGES = ("html", "pdf")
-"""Formats that are laid out, and may be rendered elsewhere."""
 
 PROVENANCE = "provenance.json"
 
