@@ -13,7 +13,7 @@ from reanalysis.report import numbers
 from reanalysis.report.blocks import Figure
 from reanalysis.report.context import Context, frequentist_decimals, limit_words, posterior_decimals
 from reanalysis.report.figures import density, paired, predictive, priors, ranks, residuals, sweep
-from reanalysis.report.sentences import sign_words
+from reanalysis.report.sentences import exceeds_words, sign_words
 from reanalysis.sensitivity.result import NoTipping, Sweep, TippingPrior, TippingResult
 from reanalysis.study.distributions import Distribution, Normal
 
@@ -262,7 +262,7 @@ def _tipping(compared: Compared, tipping: TippingResult) -> str:
         sign = sign_words(question, main) if isinstance(main, PosteriorAnswer) else "of the asked sign"
         claim = f"The probability that the effect is {sign}"
     else:
-        claim = f"The probability that it exceeds {limit_words(question)}"
+        claim = f"The probability that it {exceeds_words(question)}"
     needed = numbers.given(question.act_when)
     if isinstance(tipping, TippingPrior):
         width = numbers.quantity(numbers.given(float(f"{tipping.width:.3g}")), question.unit)

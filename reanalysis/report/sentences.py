@@ -132,7 +132,7 @@ def _interval_and_size(compared: Compared) -> str:
     return {
         "supported": f" The whole interval lies beyond {limit}.",
         "contradicted": f" The whole interval lies short of the {limit} that would matter.",
-        "open": f" The interval does not settle whether the effect exceeds {limit}.",
+        "open": f" The interval does not settle whether the effect {exceeds_words(compared.question)}.",
     }[conclusion.size]
 
 
